@@ -1,0 +1,12 @@
+/**
+ * What the rest of the calculation needs to know of a velocity distribution of dark matter in the laboratory: its mean
+ * inverse speed η(v_min) = ∫_{v > v_min} f(v)/v d³v and where that function bends.
+ */
+export interface VelocityDistribution {
+  /** No particle is faster than this in the laboratory, km/s: η is exactly 0 from here on. */
+  readonly largestSpeedKmPerS: number;
+  /** Speeds, km/s, ascending, between 0 and the largest speed, where η or one of its first derivatives jumps. */
+  readonly kinksKmPerS: readonly number[];
+  /** η(v_min) in s/km for v_min ≥ 0 in km/s. */
+  meanInverseSpeed(vMinKmPerS: number): number;
+}

@@ -1,0 +1,50 @@
+/** What a reader of the numbers should know, one sentence or two for each. */
+import type { CrystalRate, RangeCut } from '../../physics/rate/crystal-rate.ts';
+import type { ResolvedScenario } from './rates-answer.ts';
+
+export interface NoticeOut {
+  code: string;
+  detail: string;
+}
+
+const significant = (value: number, digits = 4): string => String(Number(value.toPrecision(digits)));
+
+export function rateNotices(scenario: ResolvedScenario, rate: CrystalRate): NoticeOut[] {
+  const notices: NoticeOut[] = [
+    {
+      code: 'planning-estimate',
+      detail: 'A planning estimate. The collaboration’s own analysis of its detector takes precedence.',
+    },
+  ];
+  if (!scenario.crystal.screened) {
+    notices.push({
+      code: 'unscreened-table',
+      detail:
+        'The table does not include in-medium screening; the rates are those of independent electrons, too high at small momentum transfer.',
+    });
+  }
+  const { massMev, massSplittingEv } = scenario.darkMatter;
+  const beyond = rate.bins.find((bin) => bin.fromEv >= rate.largestEnergyEv);
+  if (beyond) {
+    const splitting = massSplittingEv === 0 ? '' : ` at a mass splitting of ${massSplittingEv} eV`;
+    notices.push({
+      code: 'unreachable-bins',
+      detail:
+        `A particle of ${significant(massMev)} MeV gives the crystal at most ${significant(Math.max(0, rate.largestEnergyEv))} eV${splitting}: ` +
+        `bins from ${beyond.electrons} electrons on are exactly 0. The smallest mass that can reach the lowest energy which frees an electron is ` +
+        `${significant(rate.smallestMassEv / 1e6, 6)} MeV.`,
+    });
+  }
+  for (const cut of rate.rangeCuts) notices.push({ code: `${cut.axis}-range-cut`, detail: rangeCutSentence(cut) });
+  return notices;
+}
+
+function rangeCutSentence({ axis, end, tableEv, kinematicEv, edgeShare }: RangeCut): string {
+  const [unit, scale] = axis === 'momentum' ? ['keV', 1e-3] : ['eV', 1];
+  const number = (ev: number): string => `${significant(ev * scale)} ${unit}`;
+  const share = edgeShare === 0 ? 'none of the rate' : `${significant(100 * edgeShare, 2)} % of the rate`;
+  return (
+    `The table ${end === 'upper' ? 'ends at' : 'begins at'} ${number(tableEv)} in ${axis}, the kinematics allow ` +
+    `${end === 'upper' ? 'up to' : 'down to'} ${number(kinematicEv)}. The 5 % of the axis next to that end hold ${share}; what lies beyond is missing.`
+  );
+}

@@ -1,0 +1,72 @@
+/**
+ * A stored crystal table and its canonical content: one line of canonical JSON (RFC 8785) that says everything but the values,
+ * then the values as little-endian float64, row after row. The id is the SHA-256 of exactly these bytes, and a file in the store
+ * holds exactly these bytes.
+ */
+import { createHash } from 'node:crypto';
+import canonicalize from 'canonicalize';
+import type { CrystalTable } from '../../physics/crystal/crystal-table.ts';
+import type { CrystalHeader } from '../schemas/crystal.ts';
+
+export interface CrystalRecord {
+  readonly id: string;
+  readonly header: CrystalHeader;
+  /** Row-major, on shared memory: workers use it without a copy. */
+  readonly values: Float64Array;
+}
+
+export const CRYSTAL_ID = /^[0-9a-f]{64}$/;
+
+/** A table whose bytes are not what they should be. */
+export class DamagedTableError extends Error {}
+
+/** Rows × columns that the axes make. */
+export function shapeOf(header: CrystalHeader): { readonly rows: number; readonly columns: number } {
+  const less = header.axes === 'edges' ? 1 : 0;
+  return { rows: header.momentumKev.length - less, columns: header.energyEv.length - less };
+}
+
+/** The canonical content. All machines this runs on are little-endian. */
+export function contentOf(header: CrystalHeader, values: Float64Array): Buffer {
+  const line = Buffer.from(`${canonicalize(header)}\n`, 'utf8');
+  return Buffer.concat([line, Buffer.from(values.buffer, values.byteOffset, values.byteLength)]);
+}
+
+export function idOf(content: Buffer): string {
+  return createHash('sha256').update(content).digest('hex');
+}
+
+/** Reads canonical content back and checks it against its id; throws DamagedTableError. */
+export function recordOf(id: string, content: Buffer): CrystalRecord {
+  if (idOf(content) !== id) throw new DamagedTableError('content does not match its hash');
+  const { header, end } = headerOf(content);
+  const { rows, columns } = shapeOf(header);
+  if (content.length - end !== 8 * rows * columns) throw new DamagedTableError('content does not match its axes');
+  const shared = new SharedArrayBuffer(8 * rows * columns);
+  new Uint8Array(shared).set(content.subarray(end));
+  return { id, header, values: new Float64Array(shared) };
+}
+
+/** The header at the beginning of canonical content, and where the values begin. */
+export function headerOf(content: Buffer): { readonly header: CrystalHeader; readonly end: number } {
+  const newline = content.indexOf(0x0a);
+  if (newline < 0) throw new DamagedTableError('has no header');
+  try {
+    return { header: JSON.parse(content.toString('utf8', 0, newline)) as CrystalHeader, end: newline + 1 };
+  } catch {
+    throw new DamagedTableError('has an unreadable header');
+  }
+}
+
+/** The table as the calculation wants it: eV throughout. */
+export function tableOf(header: CrystalHeader, values: Float64Array): CrystalTable {
+  return {
+    axes: header.axes,
+    quantity: header.quantity,
+    momentumEv: Float64Array.from(header.momentumKev, (q) => q * 1e3),
+    energyEv: Float64Array.from(header.energyEv),
+    values,
+    cellMassEv: header.cellMassGev * 1e9,
+    ...(header.cellVolumeAngstrom3 === undefined ? {} : { cellVolumeAngstrom3: header.cellVolumeAngstrom3 }),
+  };
+}

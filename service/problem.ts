@@ -1,0 +1,74 @@
+/**
+ * Every failure as RFC 9457 `application/problem+json`, built in this one place. A Problem carries facts that the caller may
+ * see; anything else that is thrown becomes a bare 500 and goes to the log.
+ */
+
+export const PROBLEM_TYPES = {
+  'malformed-body': { status: 400, title: 'The body cannot be read' },
+  'not-found': { status: 404, title: 'Not found' },
+  method: { status: 405, title: 'Method not allowed' },
+  'not-acceptable': { status: 406, title: 'No such representation' },
+  'in-use': { status: 409, title: 'In use' },
+  'too-large': { status: 413, title: 'Too large' },
+  'media-type': { status: 415, title: 'Unsupported media type' },
+  'invalid-input': { status: 422, title: 'The input is invalid' },
+  internal: { status: 500, title: 'Internal error' },
+  busy: { status: 503, title: 'Busy' },
+  'storage-full': { status: 507, title: 'The table could not be stored' },
+} as const;
+
+export type ProblemType = keyof typeof PROBLEM_TYPES;
+
+/** One fault of the input: an RFC 6901 pointer into the body, or the name of a query or path parameter. */
+export interface Fault {
+  readonly pointer?: string;
+  readonly parameter?: string;
+  readonly detail: string;
+}
+
+/** Faults listed at most; the detail says how many there were. */
+export const MOST_FAULTS = 50;
+
+export class Problem extends Error {
+  readonly type: ProblemType;
+  readonly faults: readonly Fault[];
+  readonly headers: Readonly<Record<string, string>>;
+  /** The table that a faulty body names: whether it exists is told along with the other faults. */
+  namedCrystal: string | undefined;
+
+  constructor(type: ProblemType, detail: string, faults: readonly Fault[] = [], headers: Record<string, string> = {}) {
+    super(detail);
+    this.name = 'Problem';
+    this.type = type;
+    this.faults = faults;
+    this.headers = headers;
+  }
+}
+
+/** Bad input, every fault at once. */
+export function invalidInput(faults: readonly Fault[]): Problem {
+  const shown = faults.slice(0, MOST_FAULTS);
+  const count = faults.length === 1 ? '1 fault' : `${faults.length} faults`;
+  const cut = faults.length > shown.length ? `, the first ${shown.length} listed` : '';
+  return new Problem('invalid-input', `The request has ${count}${cut}.`, shown);
+}
+
+/** RFC 6901 pointer of a path of keys. */
+export function pointerOf(path: readonly PropertyKey[]): string {
+  return path.map((key) => `/${String(key).replaceAll('~', '~0').replaceAll('/', '~1')}`).join('');
+}
+
+export function problemResponse(problem: Problem): Response {
+  const { status, title } = PROBLEM_TYPES[problem.type];
+  const body = {
+    type: `/problems/${problem.type}`,
+    title,
+    status,
+    detail: problem.message,
+    ...(problem.faults.length > 0 ? { errors: problem.faults } : {}),
+  };
+  return new Response(JSON.stringify(body), {
+    status,
+    headers: { 'Content-Type': 'application/problem+json', 'Cache-Control': 'no-store', ...problem.headers },
+  });
+}

@@ -1,0 +1,151 @@
+import type { Context } from 'hono';
+import { Problem } from '../problem.ts';
+import { defineRoute, negotiate } from '../route.ts';
+import { CrystalDescription, CrystalList, CrystalValues } from '../schemas/crystal.ts';
+
+const IMMUTABLE = 'public, max-age=31536000, immutable';
+const ID = 'SHA-256 of the table, or the alias of a built-in one.';
+
+const table = {
+  name: 'Invented numbers',
+  source: 'Made up to show the form of a table',
+  cellMass: { formula: 'Si2' },
+  cellVolume: '40.0 angstrom^3',
+  electronsPerCell: 8,
+  bandGap: '1.12 eV',
+  energyPerPair: '3.8 eV',
+  momentum: { unit: 'keV', edges: [1, 2, 4] },
+  energy: { unit: 'eV', edges: { start: 0, step: 4, count: 4 } },
+};
+
+function unknownTable(name: string): Problem {
+  return new Problem('not-found', `No table has the id or alias "${name}"; GET /v1/crystals lists them.`);
+}
+
+/** Validators of a table's representation: immutable by id, to be asked again by alias. Answers 304 itself. */
+function cached(c: Context, id: string, isAlias: boolean, variant: string): Response | undefined {
+  const tag = `"${id}${variant}"`;
+  c.header('ETag', tag);
+  c.header('Cache-Control', isAlias ? 'no-cache' : IMMUTABLE);
+  const known = (c.req.header('if-none-match') ?? '').split(',').map((entry) => entry.trim().replace(/^W\//, ''));
+  return known.includes(tag) || known.includes('*') ? c.body(null, 304) : undefined;
+}
+
+export const postCrystal = defineRoute({
+  method: 'post',
+  path: '/v1/crystals',
+  operationId: 'storeCrystal',
+  tag: 'crystals',
+  summary: 'Store a crystal form factor table',
+  description: 'Tables are content-addressed: the same table is stored once and can be posted again safely.',
+  body: 'crystal',
+  examples: {
+    formFactor: {
+      summary: 'A form factor with cells',
+      value: {
+        ...table,
+        formFactorSquared: [
+          [0.1, 0.2, 0.1],
+          [0, 0.3, 0.2],
+        ],
+      },
+    },
+    lossFunction: {
+      summary: 'A loss function sampled at points',
+      value: {
+        ...table,
+        momentum: { unit: '1/angstrom', points: [0.5, 1, 2] },
+        energy: { unit: 'eV', points: [2, 8, 16, 24] },
+        lossFunction: [
+          [0.01, 0.2, 2.5, 0.3],
+          [0.01, 0.2, 1.5, 0.4],
+          [0.01, 0.1, 0.5, 0.6],
+        ],
+      },
+    },
+  },
+  responses: {
+    200: { description: 'The same table was already there.', schema: CrystalDescription },
+    201: { description: 'Stored.', schema: CrystalDescription, headers: { Location: 'Where the table is.' } },
+  },
+  problems: ['malformed-body', 'not-acceptable', 'too-large', 'media-type', 'invalid-input', 'busy', 'storage-full'],
+  async handle({ c, body, dependencies: { crystals } }) {
+    negotiate(c, ['application/json']);
+    // not stopped when the caller leaves: a table is stored whole or not at all, and it is soon done
+    const { created } = await crystals.add(body);
+    c.header('Location', `/v1/crystals/${body.id}`);
+    return c.json(await crystals.describe(body.id), created ? 201 : 200);
+  },
+});
+
+export const listCrystals = defineRoute({
+  method: 'get',
+  path: '/v1/crystals',
+  operationId: 'listCrystals',
+  tag: 'crystals',
+  summary: 'All tables: built-in ones first, then by name',
+  responses: { 200: { description: 'Descriptions without values.', schema: CrystalList } },
+  problems: ['not-acceptable', 'busy'],
+  async handle({ c, dependencies: { crystals } }) {
+    negotiate(c, ['application/json']);
+    c.header('Cache-Control', 'no-cache');
+    return c.json({ crystals: await crystals.list() });
+  },
+});
+
+export const getCrystal = defineRoute({
+  method: 'get',
+  path: '/v1/crystals/{id}',
+  operationId: 'describeCrystal',
+  tag: 'crystals',
+  summary: 'One table: axes, provenance, stated accuracy',
+  parameters: { id: ID },
+  responses: {
+    200: { description: 'The description.', schema: CrystalDescription, headers: { ETag: 'The id of the table.' } },
+  },
+  problems: ['not-found', 'not-acceptable', 'busy'],
+  async handle({ c, dependencies: { crystals } }) {
+    negotiate(c, ['application/json']);
+    const name = c.req.param('id')!;
+    const description = await crystals.describe(name);
+    if (!description) throw unknownTable(name);
+    return cached(c, description.id, crystals.isAlias(name), '') ?? c.json(description);
+  },
+});
+
+export const getCrystalValues = defineRoute({
+  method: 'get',
+  path: '/v1/crystals/{id}/values',
+  operationId: 'downloadCrystal',
+  tag: 'crystals',
+  summary: 'A whole table, in the form in which it can be posted',
+  parameters: { id: ID },
+  responses: { 200: { description: 'The table.', schema: CrystalValues, headers: { ETag: 'The id of the table.' } } },
+  problems: ['not-found', 'not-acceptable', 'busy'],
+  async handle({ c, dependencies: { crystals, compute }, signal }) {
+    const mediaType = negotiate(c, ['application/json']);
+    const name = c.req.param('id')!;
+    const record = await crystals.find(name);
+    if (!record) throw unknownTable(name);
+    const unchanged = cached(c, record.id, crystals.isAlias(name), '-values');
+    if (unchanged) return unchanged;
+    const text = await compute.run('valuesText', { header: record.header, values: record.values }, { signal });
+    return c.body(text as Uint8Array<ArrayBuffer>, 200, { 'Content-Type': mediaType });
+  },
+});
+
+export const deleteCrystal = defineRoute({
+  method: 'delete',
+  path: '/v1/crystals/{id}',
+  operationId: 'deleteCrystal',
+  tag: 'crystals',
+  summary: 'Delete an uploaded table',
+  parameters: { id: ID },
+  responses: { 204: { description: 'Deleted.' } },
+  problems: ['not-found', 'in-use', 'busy'],
+  async handle({ c, dependencies: { crystals } }) {
+    const name = c.req.param('id')!;
+    if (!(await crystals.remove(name))) throw unknownTable(name);
+    return c.body(null, 204);
+  },
+});

@@ -1,0 +1,18 @@
+/** Every route of the contract, in the order in which the document shows them. */
+import type { RouteDefinition } from '../route.ts';
+import { deleteCrystal, getCrystal, getCrystalValues, listCrystals, postCrystal } from './crystals.ts';
+import { healthz, readyz } from './health.ts';
+import { meanInverseSpeed } from './mean-inverse-speed.ts';
+import { rates } from './rates.ts';
+
+export const ROUTES: readonly RouteDefinition[] = [
+  rates,
+  postCrystal,
+  listCrystals,
+  getCrystal,
+  getCrystalValues,
+  deleteCrystal,
+  meanInverseSpeed,
+  healthz,
+  readyz,
+];
