@@ -26,9 +26,9 @@ export interface SpeedTail {
 
 /** Cells of the whole table, and of each finer one for its last speeds: near v_max relative accuracy needs ever finer cells. */
 const CELLS = 1024;
-const TOP_CELLS = 128;
-/** Cells that a finer table takes over, and how often that is repeated: down to 1e-6 of v_max. */
-const CELLS_TAKEN_OVER = 8;
+const TOP_CELLS = 256;
+/** Cells that a finer table takes over, and how often that is repeated: down to 1e-5 of v_max. */
+const CELLS_TAKEN_OVER = 32;
 const FINER_TABLES = 4;
 
 /** ∫ η over [from, to], Simpson's rule on pieces divided at the kinks. `atFrom` and `atTo` are η at the ends. */

@@ -116,7 +116,7 @@ export function standardHalo(parameters: StandardHaloParameters): VelocityDistri
   const scale = 1 / (v0 * rootPiN);
   /** ∫ g over the window [x − y, x + y], divided by y; 2 g(x) in the limit y → 0. */
   const windowMean = (vMin: number): number => {
-    const lowerEndBelow = (vMax - vMin) / v0; // z − (x − y)
+    const lowerEndBelow = (vEsc - vMin + vE) / v0; // z − (x − y), in the order that keeps a small v_E
     if (y < WINDOW_IS_A_POINT) return 2 * transverseDensity(lowerEndBelow, z, cutoff);
     const upperEndBelow = Math.max(0, lowerEndBelow - 2 * y);
     const length = Math.min(2 * y, lowerEndBelow, 2 * z);

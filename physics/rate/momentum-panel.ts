@@ -54,52 +54,69 @@ export function intervalOf(axis: Float64Array, x: number): number {
   return low;
 }
 
-/**
- * The panel [fromEv, toEv], which must lie within the table's momentum axis. Columns from `columns.end` on are not needed and
- * left at zero. Cost: five multiplications a table cell.
- */
-export function momentumPanel(
-  table: CrystalTable,
-  fromEv: number,
-  toEv: number,
-  columns: { readonly start: number; readonly end: number } = { start: 0, end: columnsOf(table) },
-): MomentumPanel {
-  const width = toEv - fromEv;
+/** Rows are added a few at a time: the moments are then read and written once for all of them. */
+const ROWS_AT_ONCE = 4;
+
+/** The panel [fromEv, toEv], which must lie within the table's momentum axis. Cost: five multiplications a table cell. */
+function computePanel(table: CrystalTable, fromEv: number, toEv: number): MomentumPanel {
   const stride = columnsOf(table);
   const moments = new Float64Array(NODES * stride);
-  const axis = table.momentumEv;
-  const addRow = (row: number, w: readonly number[]): void => {
-    const [w0, w1, w2, w3, w4] = w;
-    const values = table.values;
-    for (let j = columns.start, v = row * stride + columns.start; j < columns.end; j++, v++) {
-      const f = values[v];
-      moments[j] += w0 * f;
-      moments[stride + j] += w1 * f;
-      moments[2 * stride + j] += w2 * f;
-      moments[3 * stride + j] += w3 * f;
-      moments[4 * stride + j] += w4 * f;
+  const rows = rowWeights(table, fromEv, toEv);
+  while (rows.length % ROWS_AT_ONCE !== 0) rows.push({ row: rows[0].row, weights: new Array(NODES).fill(0) });
+  for (let r = 0; r < rows.length; r += ROWS_AT_ONCE) {
+    const [a, b, c, d] = rows
+      .slice(r, r + ROWS_AT_ONCE)
+      .map(({ row }) => table.values.subarray(row * stride, (row + 1) * stride));
+    for (let k = 0; k < NODES; k++) {
+      const [wa, wb, wc, wd] = rows.slice(r, r + ROWS_AT_ONCE).map(({ weights }) => weights[k]);
+      const moment = moments.subarray(k * stride, (k + 1) * stride);
+      for (let j = 0; j < moment.length; j++) moment[j] += wa * a[j] + wb * b[j] + wc * c[j] + wd * d[j];
     }
-  };
-  for (let i = intervalOf(axis, fromEv); i < axis.length - 1 && axis[i] < toEv; i++) {
+  }
+  return { fromEv, toEv, nodesEv: UNIT_NODES.map((t) => (t === 1 ? toEv : fromEv + (toEv - fromEv) * t)), moments };
+}
+
+/** The table's rows that the panel meets, each with its five weights: the integrals of ℓ_k over what the row covers. */
+function rowWeights(table: CrystalTable, fromEv: number, toEv: number): { row: number; weights: number[] }[] {
+  const axis = table.momentumEv;
+  const linear = table.axes === 'points';
+  const rows: { row: number; weights: number[] }[] = [];
+  const first = intervalOf(axis, fromEv);
+  for (let i = first; i < axis.length - 1 && axis[i] < toEv; i++) {
     const a = Math.max(fromEv, axis[i]);
     const b = Math.min(toEv, axis[i + 1]);
-    if (!(b > a)) continue;
-    const here = [0, 0, 0, 0, 0];
-    const next = [0, 0, 0, 0, 0];
+    const here = rows.find(({ row }) => row === i)?.weights ?? new Array<number>(NODES).fill(0);
+    const next = new Array<number>(NODES).fill(0);
+    if (rows.at(-1)?.row !== i) rows.push({ row: i, weights: here });
+    if (linear) rows.push({ row: i + 1, weights: next });
     for (let g = 0; g < RULE.nodes.length; g++) {
       const q = (a + b) / 2 + ((b - a) / 2) * RULE.nodes[g];
       const weight = (RULE.weights[g] * (b - a)) / 2;
-      const share = table.axes === 'points' ? (q - axis[i]) / (axis[i + 1] - axis[i]) : 0;
-      const basis = lagrange((q - fromEv) / width);
+      const share = linear ? (q - axis[i]) / (axis[i + 1] - axis[i]) : 0;
+      const basis = lagrange((q - fromEv) / (toEv - fromEv));
       for (let k = 0; k < NODES; k++) {
         here[k] += weight * basis[k] * (1 - share);
         next[k] += weight * basis[k] * share;
       }
     }
-    addRow(i, here);
-    if (table.axes === 'points') addRow(i + 1, next);
   }
-  return { fromEv, toEv, nodesEv: UNIT_NODES.map((t) => (t === 1 ? toEv : fromEv + width * t)), moments };
+  return rows;
+}
+
+/** Panels of a table that are kept: they serve every mass, mediator and halo. */
+const MOST_BYTES_A_TABLE = 16 * 2 ** 20;
+const panels = new WeakMap<CrystalTable, Map<string, MomentumPanel>>();
+
+/** The panel [fromEv, toEv], which must lie within the table's momentum axis; computed once for each table. */
+export function momentumPanel(table: CrystalTable, fromEv: number, toEv: number): MomentumPanel {
+  const known = panels.get(table) ?? new Map<string, MomentumPanel>();
+  panels.set(table, known);
+  const key = `${fromEv} ${toEv}`;
+  const panel = known.get(key) ?? computePanel(table, fromEv, toEv);
+  known.delete(key);
+  known.set(key, panel); // most recently used last
+  if (known.size * panel.moments.byteLength > MOST_BYTES_A_TABLE) known.delete(known.keys().next().value!);
+  return panel;
 }
 
 /** Ratio of neighbouring lattice momenta: a panel is 7 % of its momentum wide. */

@@ -39,8 +39,11 @@ export interface PanelEvaluator {
   /** After `evaluate`: the five-node result and its difference from the three-node one, per segment. */
   readonly value: Float64Array;
   readonly difference: Float64Array;
-  /** Integrates over the panel; returns how many segments, from the lowest, can be reached. */
-  evaluate(panel: MomentumPanel): number;
+  /**
+   * Integrates over the panel. Segments, counted from the lowest, that can be reached from all of its nodes, and from any of
+   * them: in those between, the integrand begins somewhere inside the panel and is not smooth.
+   */
+  evaluate(panel: MomentumPanel): { readonly fromAll: number; readonly fromAny: number };
 }
 
 export function panelEvaluator(integrand: RateIntegrand): PanelEvaluator {
@@ -157,10 +160,11 @@ export function panelEvaluator(integrand: RateIntegrand): PanelEvaluator {
       else fillNode(panel.nodesEv[0], nodes[0]);
       for (let k = 1; k < NODES; k++) fillNode(panel.nodesEv[k], nodes[k]);
       lastNodeEv = panel.toEv;
-      const reach = Math.max(...nodes.map((node) => node.reach));
-      if (linear) combineLinear(panel.moments, reach);
-      else combineConstant(panel.moments, reach);
-      return reach;
+      const reaches = nodes.map((node) => node.reach);
+      const fromAny = Math.max(...reaches);
+      if (linear) combineLinear(panel.moments, fromAny);
+      else combineConstant(panel.moments, fromAny);
+      return { fromAll: Math.min(...reaches), fromAny };
     },
   };
 }

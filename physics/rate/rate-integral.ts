@@ -7,7 +7,6 @@
  * is halved until its estimated error is small in every group of segments.
  */
 import { SPEED_OF_LIGHT_KM_PER_S } from '../constants.ts';
-import type { CrystalTable } from '../crystal/crystal-table.ts';
 import { momentumRangeEv } from '../kinematics/kinematics.ts';
 import { momentumPanel, panelBoundariesEv } from './momentum-panel.ts';
 import type { RateIntegrand } from './panel-evaluator.ts';
@@ -23,9 +22,11 @@ export interface RateIntegral {
 }
 
 /** A panel is halved while its estimated error exceeds this share of any group's sum, divided by the number of panels. */
-const TOLERANCE = 2e-5;
+const TOLERANCE = 3e-4;
 /** The error of the five-node rule is estimated as this times δ²/|S|, δ its difference from the three-node rule. */
 const SAFETY = 20;
+/** Where the integrand begins inside a panel, at the kinematic boundary, as this times δ: convergence is only algebraic there. */
+const BEGINNING = 0.5;
 /** What the tabulated tail of η and rounding add, relative: measured below 3e-8. */
 const TAIL_ERROR = 1e-7;
 /** No panel is wider than this share of the momentum window of any group it meets, so that no window is stepped over. */
@@ -77,25 +78,28 @@ export function rateIntegral(
 
   const evaluator = panelEvaluator(integrand);
   const groupEnds = [...groupStarts.slice(1), segments.count];
-  const columns = reachableColumns(integrand, largestSpeedKmPerS);
   let evaluations = 0;
 
   const evaluate = (fromEv: number, toEv: number): EvaluatedPanel => {
-    const reach = evaluator.evaluate(momentumPanel(table, fromEv, toEv, columns));
+    const { fromAll, fromAny } = evaluator.evaluate(momentumPanel(table, fromEv, toEv));
     evaluations++;
     const sums = new Float64Array(groupStarts.length);
     const errors = new Float64Array(groupStarts.length);
-    for (let g = 0; g < groupStarts.length && groupStarts[g] < reach; g++) {
+    for (let g = 0; g < groupStarts.length && groupStarts[g] < fromAny; g++) {
       let sum = 0;
-      let difference = 0;
-      for (let s = groupStarts[g]; s < Math.min(groupEnds[g], reach); s++) {
+      let smooth = 0;
+      let beginning = 0;
+      for (let s = groupStarts[g]; s < Math.min(groupEnds[g], fromAny); s++) {
         sum += evaluator.value[s];
-        difference += Math.abs(evaluator.difference[s]);
+        const difference = Math.abs(evaluator.difference[s]);
+        // the last segment within reach of every node is cut by the kinematic boundary at one of them
+        if (s < fromAll - 1) smooth += difference;
+        else beginning += difference;
       }
       sums[g] = sum;
-      errors[g] = Math.min(difference, (SAFETY * difference * difference) / Math.abs(sum) || 0);
+      errors[g] = Math.min(smooth, (SAFETY * smooth * smooth) / Math.abs(sum) || 0) + BEGINNING * beginning;
     }
-    return { fromEv, toEv, perSegment: evaluator.value.slice(0, reach), sums, errors };
+    return { fromEv, toEv, perSegment: evaluator.value.slice(0, fromAny), sums, errors };
   };
 
   let panels: EvaluatedPanel[] = [];
@@ -152,17 +156,4 @@ function resolveWindows(
     return [...halves(from, middle), ...halves(middle, to)];
   };
   return [boundaries[0], ...boundaries.slice(1).flatMap((to, i) => halves(boundaries[i], to))];
-}
-
-/** Table columns between the lowest segment and the highest energy that the halo can give. */
-function reachableColumns(integrand: RateIntegrand, largestSpeedKmPerS: number): { start: number; end: number } {
-  const { table, segments, massEv, splittingEv } = integrand;
-  const largestEv = 0.5 * massEv * (largestSpeedKmPerS / SPEED_OF_LIGHT_KM_PER_S) ** 2 - splittingEv;
-  let highest = 0;
-  while (highest < segments.count && segments.cutsEv[highest] <= largestEv) highest++;
-  return { start: segments.column[0], end: columnAfter(table, segments.column[Math.min(highest, segments.count)]) };
-}
-
-function columnAfter(table: CrystalTable, column: number): number {
-  return Math.min(column + 2, table.axes === 'edges' ? table.energyEv.length - 1 : table.energyEv.length);
 }

@@ -1,6 +1,7 @@
 /** The answer of POST /v1/rates but for its provenance: runs in a worker thread. */
 import type { CrystalTable } from '../../physics/crystal/crystal-table.ts';
-import { stepIonization } from '../../physics/ionization/step.ts';
+import type { IonizationModel } from '../../physics/ionization/ionization-model.ts';
+import { stepEdgeEv, stepIonization } from '../../physics/ionization/step.ts';
 import { type CrystalRate, crystalRate, type Estimate } from '../../physics/rate/crystal-rate.ts';
 import { Problem } from '../problem.ts';
 import type { HaloIn } from '../schemas/halo.ts';
@@ -8,6 +9,7 @@ import type { RatesAnswer } from '../schemas/rates.ts';
 import type { DarkMatterIn, GoalIn } from '../schemas/scenario.ts';
 import { exposureAnswer } from './exposure-answer.ts';
 import { haloOf } from './halos.ts';
+import { keptTable } from './kept-tables.ts';
 import { rateNotices } from './notices.ts';
 
 /** A scenario with everything looked up: the table by its id, gap and pair energy from here or from the table. */
@@ -35,8 +37,8 @@ export function ratesAnswer({ scenario, table }: RatesJob): Omit<RatesAnswer, 'p
       splittingEv: darkMatter.massSplittingEv,
       localDensityGevPerCm3: halo.localDensityGevPerCm3,
       halo: haloOf(halo),
-      table,
-      ionization: stepIonization(ionization.bandGapEv, ionization.energyPerPairEv),
+      table: keptTable(scenario.crystal.id, table),
+      ionization: ionizationOf(ionization),
       energyPerPairEv: ionization.energyPerPairEv,
       maxElectrons: ionization.maxElectrons,
     },
@@ -68,6 +70,13 @@ export function ratesAnswer({ scenario, table }: RatesJob): Omit<RatesAnswer, 'p
       : {}),
     notices,
   };
+}
+
+/** The step model up to the last bin returned: above it, a tiny energy per pair makes more steps than memory holds. */
+function ionizationOf({ bandGapEv, energyPerPairEv, maxElectrons }: ResolvedScenario['ionization']): IonizationModel {
+  const model = stepIonization(bandGapEv, energyPerPairEv);
+  const lastEv = stepEdgeEv(bandGapEv, energyPerPairEv, maxElectrons + 1);
+  return { ...model, breaksEv: (fromEv, toEv) => model.breaksEv(fromEv, Math.min(toEv, lastEv)) };
 }
 
 export function rateOut(rate: Estimate): { value: number; unit: '1/(kg yr)'; relativeError: number } {
