@@ -46,7 +46,8 @@ export function bracketedRoot(f: (x: number) => number, a: number, b: number, to
       return { root: best, error: 2 * Math.abs(toMiddle), evaluations };
     }
     const trial = interpolatedStep(worse, atWorse, best, atBest, opposite, atOpposite);
-    if (Math.abs(stepBefore) >= smallest && trial / toMiddle > 0 && isShort(trial, toMiddle, smallest, stepBefore)) {
+    const isFalling = Math.abs(stepBefore) >= smallest && Math.abs(atWorse) > Math.abs(atBest);
+    if (isFalling && trial / toMiddle > 0 && isShort(trial, toMiddle, smallest, stepBefore)) {
       stepBefore = step;
       step = trial;
     } else {
@@ -73,5 +74,5 @@ function interpolatedStep(a: number, fa: number, b: number, fb: number, c: numbe
   if (a === c) return ((c - b) * s) / (s - 1);
   const q = fa / fc;
   const r = fb / fc;
-  return (s * ((c - b) * q * (q - r) - (b - a) * (r - 1))) / ((q - 1) * (r - 1) * (s - 1));
+  return (s * ((b - a) * (r - 1) - (c - b) * q * (q - r))) / ((q - 1) * (r - 1) * (s - 1));
 }
