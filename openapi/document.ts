@@ -25,6 +25,7 @@ Unknown fields are refused. Request bodies may be compressed with gzip.`;
 const TAGS = {
   rates: 'Rates and exposure',
   crystals: 'Crystal form factor tables',
+  'charge tables': 'Ionization models given as tables',
   halo: 'The dark-matter halo',
   service: 'The service itself',
 };

@@ -9,6 +9,7 @@ import { type DocsPage, docsRoutes } from './docs-page.ts';
 import type { Log } from './log.ts';
 import { type Fault, invalidInput, Problem, pointerOf, problemResponse } from './problem.ts';
 import { type BodyReader, bodyReader } from './request-body.ts';
+import { unknownCrystal } from './resolve-scenario.ts';
 import type { Dependencies, RouteDefinition } from './route.ts';
 import { ROUTES } from './routes/index.ts';
 
@@ -21,6 +22,7 @@ export interface AppOptions extends Dependencies {
   readonly docs: DocsPage;
 }
 
+const METHODS = ['GET', 'HEAD', 'POST', 'DELETE'];
 const EXPOSED_HEADERS = ['Location', 'ETag', 'Retry-After', 'Server-Timing', 'X-Request-Id'];
 /** What a file system answers when it cannot or must not be written. */
 const STORAGE_CODES = new Set([
@@ -47,7 +49,13 @@ export function createApp(options: AppOptions): Hono {
     if (!c.res.headers.has('Cache-Control')) c.header('Cache-Control', 'no-store');
   });
   if (options.corsOrigins.length > 0)
-    app.use(cors({ origin: [...options.corsOrigins], exposeHeaders: EXPOSED_HEADERS }));
+    app.use(
+      cors({
+        origin: options.corsOrigins.includes('*') ? '*' : [...options.corsOrigins],
+        allowMethods: METHODS,
+        exposeHeaders: EXPOSED_HEADERS,
+      }),
+    );
   app.use(
     methodNotAllowed({
       app,
@@ -68,6 +76,8 @@ export function createApp(options: AppOptions): Hono {
 
 function register(app: Hono, route: RouteDefinition, options: AppOptions, bodies: BodyReader): void {
   app.on(route.method.toUpperCase(), route.path.replaceAll(/\{(\w+)\}/g, ':$1'), async (c) => {
+    if (route.body && !options.isReady())
+      throw new Problem('busy', 'The service is shutting down and takes no new work.', [], { 'Retry-After': '1' });
     const signal = AbortSignal.any([c.req.raw.signal, AbortSignal.timeout(options.deadlineSeconds * 1e3)]);
     const body = route.body && (await readBody(c, route, options, bodies, signal));
     return route.handle({ c, dependencies: options, body: body as never, signal });
@@ -85,16 +95,13 @@ async function readBody(
   try {
     return await bodies.read(c, route.body!, signal);
   } catch (error) {
-    if (!(error instanceof Problem) || error.namedCrystal === undefined) throw error;
-    if (error.faults.some(({ pointer }) => pointer === '/crystal/id')) throw error;
-    if (await options.crystals.find(error.namedCrystal)) throw error;
-    throw invalidInput([
-      ...error.faults,
-      {
-        pointer: '/crystal/id',
-        detail: `no table has the id or alias "${error.namedCrystal}"; GET /v1/crystals lists them`,
-      },
-    ]);
+    if (!(error instanceof Problem)) throw error;
+    const unknown: Fault[] = [];
+    for (const { pointer, id } of error.namedCrystals) {
+      const told = error.faults.some((fault) => fault.pointer === pointer);
+      if (!told && !(await options.crystals.find(id))) unknown.push(unknownCrystal(pointer, id));
+    }
+    throw unknown.length > 0 ? invalidInput([...error.faults, ...unknown]) : error;
   }
 }
 
@@ -120,6 +127,7 @@ function problemOf(error: Error, c: Context, { log, deadlineSeconds }: AppOption
 /** Where the parameters of the calculation stand in a scenario. */
 const POINTERS: Readonly<Record<string, string>> = {
   mass: '/darkMatter/mass',
+  'mediator mass': '/darkMatter/mediator/mass',
   referenceCrossSection: '/darkMatter/referenceCrossSection',
   massSplitting: '/darkMatter/massSplitting',
   localDensity: '/halo/localDensity',
@@ -133,6 +141,6 @@ const POINTERS: Readonly<Record<string, string>> = {
 function faultOf(error: DomainError): Fault {
   return {
     pointer: POINTERS[error.parameter.join('/')] ?? pointerOf(error.parameter),
-    detail: `must be ${error.allowed}; got ${String(error.value)}`,
+    detail: `must be ${error.allowed}; got ${/^(?:-?Infinity|NaN)$/.test(String(error.value)) ? 'one beyond all that can be held' : String(error.value)}`,
   };
 }

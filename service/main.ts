@@ -1,12 +1,33 @@
-/** Runs the service: `npm start`. The only file that acts when it is loaded. */
+/** Runs the service: `npm start`. The only file, beside the demo, that acts when it is loaded. */
 import type { Server } from 'node:http';
 import { serve } from '@hono/node-server';
 import { type Config, ConfigError, configOf } from './config.ts';
 import { createLog } from './log.ts';
-import { startService } from './start.ts';
+import { type Service, startService } from './start.ts';
 
 /** What is in flight may take this long after SIGTERM. */
 const LONGEST_DRAIN_MS = 30_000;
+
+let draining = false;
+let running: { readonly service: Service; readonly server: Server } | undefined;
+
+/** On SIGTERM, which may come twice or during the start: no new work, what is in flight finishes, exit 0. */
+function drain(): void {
+  if (draining) return;
+  draining = true;
+  setTimeout(() => process.exit(1), LONGEST_DRAIN_MS).unref();
+  if (running) stop(running);
+}
+
+function stop({ service, server }: NonNullable<typeof running>): void {
+  service.drain();
+  server.close(() => {
+    void service.close().then(() => process.exit(0));
+  });
+  server.closeIdleConnections();
+}
+
+for (const signal of ['SIGTERM', 'SIGINT'] as const) process.on(signal, drain);
 
 let config: Config;
 try {
@@ -17,14 +38,12 @@ try {
   process.exit(2);
 }
 
-const log = createLog(config.logLevel);
-const service = await startService(config, log);
-let draining = false;
-
+const service = await startService(config, createLog(config.logLevel));
 const server = serve({ fetch: service.app.fetch, hostname: config.host, port: config.port }, (address) => {
   const host = address.family === 'IPv6' ? `[${address.address}]` : address.address;
   process.stdout.write(`gramyear listens on http://${host}:${address.port}\n`);
 }) as Server;
+running = { service, server };
 
 server.on('error', (error: NodeJS.ErrnoException) => {
   process.stderr.write(`gramyear cannot listen on ${config.host}:${config.port}: ${error.code ?? error.message}\n`);
@@ -33,16 +52,4 @@ server.on('error', (error: NodeJS.ErrnoException) => {
 server.on('request', (_request, response) => {
   if (draining && !response.headersSent) response.setHeader('Connection', 'close');
 });
-
-function drain(): void {
-  if (draining) return;
-  draining = true;
-  service.drain();
-  server.close(() => {
-    void service.close().then(() => process.exit(0));
-  });
-  server.closeIdleConnections();
-  setTimeout(() => process.exit(1), LONGEST_DRAIN_MS).unref();
-}
-
-for (const signal of ['SIGTERM', 'SIGINT'] as const) process.on(signal, drain);
+if (draining) stop(running);

@@ -26,6 +26,12 @@ export interface Fault {
   readonly detail: string;
 }
 
+/** A table by the id or alias at a pointer of a body. */
+export interface NamedCrystal {
+  readonly pointer: string;
+  readonly id: string;
+}
+
 /** Faults listed at most; the detail says how many there were. */
 export const MOST_FAULTS = 50;
 
@@ -33,8 +39,8 @@ export class Problem extends Error {
   readonly type: ProblemType;
   readonly faults: readonly Fault[];
   readonly headers: Readonly<Record<string, string>>;
-  /** The table that a faulty body names: whether it exists is told along with the other faults. */
-  namedCrystal: string | undefined;
+  /** The tables that a faulty body names: whether they exist is told along with the other faults. */
+  namedCrystals: readonly NamedCrystal[] = [];
 
   constructor(type: ProblemType, detail: string, faults: readonly Fault[] = [], headers: Record<string, string> = {}) {
     super(detail);

@@ -1,11 +1,15 @@
-/** From a validated scenario to one that can be computed: its table found, the gap and pair energy settled, or every fault told. */
+/** From a validated scenario to one that can be computed: its tables found, the gap and pair energy settled, or every fault told. */
 import type { CrystalTable } from '../physics/crystal/crystal-table.ts';
-import type { ResolvedScenario } from './compute/rates-answer.ts';
-import type { CrystalLibrary } from './crystals/crystal-library.ts';
+import { tableFaults } from '../physics/ionization/table.ts';
+import type { ResolvedScenario } from './compute/resolved-scenario.ts';
 import { tableOf } from './crystals/crystal-record.ts';
-import { type Fault, invalidInput } from './problem.ts';
+import { type Fault, invalidInput, pointerOf } from './problem.ts';
+import type { Dependencies } from './route.ts';
+import { type ChargeTable, chargeTablePath } from './schemas/charge-table.ts';
 import type { CrystalHeader } from './schemas/crystal.ts';
 import type { CrystalIn, ScenarioIn } from './schemas/scenario.ts';
+
+type Tables = Pick<Dependencies, 'crystals' | 'chargeTables'>;
 
 interface FoundCrystal {
   readonly id: string;
@@ -14,29 +18,44 @@ interface FoundCrystal {
   readonly inline: boolean;
 }
 
+export function unknownCrystal(pointer: string, id: string): Fault {
+  return { pointer, detail: `no table has the id or alias "${id}"; GET /v1/crystals lists them` };
+}
+
 /** The table a scenario names or brings; undefined with a fault where the name is unknown. */
-async function findCrystal(
-  crystal: CrystalIn,
-  library: CrystalLibrary,
-  faults: Fault[],
-): Promise<FoundCrystal | undefined> {
+async function findCrystal(crystal: CrystalIn, tables: Tables, faults: Fault[]): Promise<FoundCrystal | undefined> {
   if ('header' in crystal) return { ...crystal, inline: true };
-  const record = await library.find(crystal.id);
-  if (!record)
-    faults.push({
-      pointer: '/crystal/id',
-      detail: `no table has the id or alias "${crystal.id}"; GET /v1/crystals lists them`,
-    });
+  const record = await tables.crystals.find(crystal.id);
+  if (!record) faults.push(unknownCrystal('/crystal/id', crystal.id));
   return record && { ...record, inline: false };
 }
 
-export async function resolveScenario(
-  input: ScenarioIn,
-  library: CrystalLibrary,
-): Promise<{ readonly scenario: ResolvedScenario; readonly table: CrystalTable }> {
+async function findChargeTable(input: ScenarioIn, tables: Tables, faults: Fault[]): Promise<ChargeTable | undefined> {
+  const { table } = input.ionization;
+  if (table === undefined || !('id' in table)) return table;
+  const record = await tables.chargeTables.get(table.id);
+  if (!record)
+    faults.push({
+      pointer: '/ionization/table/id',
+      detail: `no charge table has the id "${table.id}"; GET /v1/charge-tables lists them`,
+    });
+  return record && { energiesEv: record.header.energiesEv, probabilities: record.header.probabilities };
+}
+
+export interface ScenarioToCompute {
+  readonly scenario: ResolvedScenario;
+  readonly table: CrystalTable;
+}
+
+/** `at` is where in the body the scenario stands, a pointer; faults are told from there. */
+export async function resolveScenario(input: ScenarioIn, tables: Tables, at = ''): Promise<ScenarioToCompute> {
   const faults: Fault[] = [];
-  const crystal = await findCrystal(input.crystal, library, faults);
-  if (!crystal) throw invalidInput(faults);
+  const refuse = (): never => {
+    throw invalidInput(faults.map((fault) => ({ ...fault, pointer: at + (fault.pointer ?? '') })));
+  };
+  const crystal = await findCrystal(input.crystal, tables, faults);
+  const chargeTable = await findChargeTable(input, tables, faults);
+  if (!crystal) return refuse();
   const { header } = crystal;
   const bandGapEv = input.ionization.bandGapEv ?? header.bandGapEv;
   const energyPerPairEv = input.ionization.energyPerPairEv ?? header.energyPerPairEv;
@@ -45,12 +64,10 @@ export async function resolveScenario(
   };
   if (bandGapEv === undefined) missing('bandGap', 'a band gap');
   if (energyPerPairEv === undefined) missing('energyPerPair', 'an energy per pair');
-  if (bandGapEv === undefined || energyPerPairEv === undefined) throw invalidInput(faults);
+  if (bandGapEv === undefined || energyPerPairEv === undefined) return refuse();
   if (energyPerPairEv < bandGapEv) {
-    faults.push({
-      pointer: '/ionization/energyPerPair',
-      detail: `must be at least the band gap: ${energyPerPairEv} eV is below ${bandGapEv} eV`,
-    });
+    const detail = `must be at least the band gap: ${energyPerPairEv} eV is below ${bandGapEv} eV`;
+    faults.push({ pointer: '/ionization/energyPerPair', detail });
   }
   const splitting = input.darkMatter.massSplittingEv;
   if (splitting < 0 && splitting <= -bandGapEv) {
@@ -60,12 +77,17 @@ export async function resolveScenario(
       'the momentum axis begins at 0, where energy plus mass splitting can vanish: give a band gap, or a table that begins above 0';
     faults.push({ pointer: crystal.inline ? '/crystal/momentum' : '/crystal/id', detail });
   }
-  if (faults.length > 0) throw invalidInput(faults);
+  if (chargeTable) {
+    for (const { path, detail } of tableFaults({ ...chargeTable, bandGapEv })) {
+      faults.push({ pointer: pointerOf(['ionization', 'table', ...chargeTablePath(path)]), detail });
+    }
+  }
+  if (faults.length > 0) return refuse();
   return {
     scenario: {
       ...input,
       crystal: { id: crystal.id, screened: header.screened },
-      ionization: { ...input.ionization, bandGapEv, energyPerPairEv },
+      ionization: { ...input.ionization, bandGapEv, energyPerPairEv, table: chargeTable },
     },
     table: tableOf(header, crystal.values),
   };

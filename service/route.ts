@@ -7,11 +7,14 @@ import { parseAccept } from 'hono/utils/accept';
 import type { z } from 'zod';
 import type { Compute } from './compute/compute.ts';
 import type { CrystalLibrary } from './crystals/crystal-library.ts';
+import type { TableStore } from './crystals/table-store.ts';
 import { Problem, type ProblemType } from './problem.ts';
 import type { BODIES, BodyName } from './schemas/bodies.ts';
+import type { ChargeHeader } from './schemas/charge-table.ts';
 
 export interface Dependencies {
   readonly crystals: CrystalLibrary;
+  readonly chargeTables: TableStore<ChargeHeader>;
   readonly compute: Compute;
   readonly version: string;
   /** Whether the service can take work: its tables are loaded and it is not shutting down. */

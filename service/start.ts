@@ -5,7 +5,7 @@ import path from 'node:path';
 import { type AppOptions, createApp } from './app.ts';
 import { computePool } from './compute/pool.ts';
 import type { Config } from './config.ts';
-import { readCatalogue } from './crystals/built-in.ts';
+import { type BuiltIn, readCatalogue } from './crystals/built-in.ts';
 import { crystalLibrary } from './crystals/crystal-library.ts';
 import { directoryStore } from './crystals/directory-store.ts';
 import { sweepTemporaries } from './crystals/table-files.ts';
@@ -37,11 +37,12 @@ export async function startService(config: Config, log: Log): Promise<Service> {
   const tables = path.join(root, 'service', 'tables');
   const { version } = JSON.parse(fs.readFileSync(path.join(root, 'package.json'), 'utf8')) as { version: string };
   const folder = path.join(config.dataDir, 'crystals');
-  sweepTemporaries(folder, Date.now());
+  const chargeFolder = path.join(config.dataDir, 'charge-tables');
+  for (const stored of [folder, chargeFolder]) sweepTemporaries(stored, Date.now());
   const compute = computePool({ workers: config.workers, queue: config.queue });
-  const builtIns = await Promise.all(
-    readCatalogue(tables).map((entry) => compute.run('loadBuiltIn', { folder: tables, entry })),
-  );
+  const builtIns: BuiltIn[] = [];
+  // one after the other: all at once would overflow a short queue
+  for (const entry of readCatalogue(tables)) builtIns.push(await compute.run('loadBuiltIn', { folder: tables, entry }));
   const crystals = crystalLibrary(
     builtIns,
     directoryStore(folder, compute),
@@ -51,6 +52,7 @@ export async function startService(config: Config, log: Log): Promise<Service> {
   let ready = true;
   const options: AppOptions = {
     crystals,
+    chargeTables: directoryStore(chargeFolder, compute),
     compute,
     version,
     isReady: () => ready,

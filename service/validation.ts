@@ -34,6 +34,8 @@ function wrongAt(path: readonly PropertyKey[]) {
 }
 
 function plainWords(message: string): string {
+  if (/^Invalid input: expected (?:number|int), received (?:Infinity|NaN)$/.test(message))
+    return 'must be a finite number; got one beyond all that can be held';
   const missing = /^Invalid input: expected (.*), received undefined$/.exec(message);
   if (missing) return `is missing; must be ${withArticle(missing[1])}`;
   const wrong = /^Invalid input: expected (.*), received (.*)$/.exec(message);

@@ -6,7 +6,7 @@
  * zero current.
  */
 import { DomainError } from '../errors.ts';
-import type { IonizationWithReach } from '../ionization/charge-reach.ts';
+import type { IonizationModel } from '../ionization/ionization-model.ts';
 import { type DarkCurrent, darkCurrentRates } from './dark-current.ts';
 import { flatSpectrumRates } from './flat-spectrum.ts';
 import type { ReadoutResponse } from './readout.ts';
@@ -39,7 +39,7 @@ export function perBinBackground(rates: readonly MeasuredBinRate[], maxElectrons
 /** A spectrum flat in deposited energy, 1/(kg yr keV), from the gap up: ionization, noise, efficiency. Errors: flatSpectrumRates. */
 export function flatBackground(
   ratePerKgYearKev: number,
-  ionization: IonizationWithReach,
+  ionization: IonizationModel,
   response: ReadoutResponse,
 ): Float64Array {
   return response.apply(flatSpectrumRates(ratePerKgYearKev, ionization, response.lastElectron)).bins;

@@ -3,7 +3,7 @@
  * end, so the integral ends where the model no longer feeds the last electron asked for.
  */
 import { requireNonNegative } from '../errors.ts';
-import type { IonizationWithReach } from '../ionization/charge-reach.ts';
+import type { IonizationModel } from '../ionization/ionization-model.ts';
 
 const EV_PER_KEV = 1000;
 
@@ -16,7 +16,7 @@ const EV_PER_KEV = 1000;
  */
 export function flatSpectrumRates(
   ratePerKgYearKev: number,
-  ionization: IonizationWithReach,
+  ionization: IonizationModel,
   lastElectron: number,
 ): Float64Array {
   requireNonNegative('rate', ratePerKgYearKev);
@@ -32,7 +32,7 @@ export function flatSpectrumRates(
 }
 
 /** Ends of the segments, eV, from the gap to the model's reach; just the gap where it reaches nothing. */
-function segmentCutsEv(ionization: IonizationWithReach, lastElectron: number): number[] {
+function segmentCutsEv(ionization: IonizationModel, lastElectron: number): number[] {
   const from = ionization.bandGapEv;
   const to = ionization.reachEv(lastElectron);
   if (!(to > from)) return [from];

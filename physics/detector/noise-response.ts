@@ -7,7 +7,7 @@
  * where measured 0 takes all lower readings, and a last column what is read above maxElectrons: rows sum to 1.
  */
 import { DomainError, requireNonNegative } from '../errors.ts';
-import { gaussianCells, normalBetween } from '../ionization/gaussian-cells.ts';
+import { gaussianCells, normalBetween } from '../numeric/gaussian-cells.ts';
 
 /** A detector this noisy counts no electrons; it bounds the size of the matrix. */
 const LARGEST_NOISE_ELECTRONS = 100;

@@ -63,8 +63,12 @@ export function asimovDeviance(
     for (let i = 0; i < bins; i++) {
       fit.counts[i] = multiple * (test === 'discovery' ? signal[i] + total[i] : total[i]);
       fit.offsets[i] = multiple * (test === 'discovery' ? -signal[i] : signal[i]);
+      fit.means[i] = multiple * (test === 'discovery' ? total[i] : total[i] + signal[i]);
     }
-    for (let j = 0; j < uncertain.length; j++) fit.counts[bins + j] = 1 / uncertain[j].relativeUncertainty ** 2;
+    for (let j = 0; j < uncertain.length; j++) {
+      fit.counts[bins + j] = 1 / uncertain[j].relativeUncertainty ** 2;
+      fit.means[bins + j] = fit.counts[bins + j];
+    }
     fit.parameters.fill(0);
     const q = 2 * fit.minimise(RELATIVE_TOLERANCE);
     return { q, qOfBins: 2 * fit.devianceOf(0, bins) };

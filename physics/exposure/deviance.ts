@@ -18,9 +18,12 @@ export function excessOverLog(x: number): number {
 }
 
 /**
- * How much less likely n counts are at the mean n + excess than at the mean n itself: ν − n − n ln(ν/n) ≥ 0, ν = n + excess.
- * Half of a Poisson bin's contribution to −2 ln(likelihood ratio). The excess is passed, not ν, so that no digits cancel.
+ * How much less likely n counts are at the mean ν = n + excess than at the mean n itself: ν − n − n ln(ν/n) ≥ 0. Half of a
+ * Poisson bin's contribution to −2 ln(likelihood ratio). Both the excess and ν are passed: near n the excess has the digits, far
+ * below it (a bin with 1e-20 expected and one seen) the mean has them.
  */
-export function poissonDeviance(n: number, excess: number): number {
-  return n > 0 ? n * excessOverLog(excess / n) : excess;
+export function poissonDeviance(n: number, excess: number, mean: number): number {
+  if (n === 0) return excess;
+  const x = excess / n;
+  return x < -SERIES_BELOW ? excess - n * Math.log(mean / n) : n * excessOverLog(x);
 }

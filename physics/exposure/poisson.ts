@@ -28,7 +28,7 @@ function stirlingError(n: number): number {
 export function logPoissonProbability(n: number, mean: number): number {
   if (n === 0) return -mean;
   if (mean === 0) return -Infinity;
-  return -stirlingError(n) - poissonDeviance(n, mean - n) - (LOG_TWO_PI + Math.log(n)) / 2;
+  return -stirlingError(n) - poissonDeviance(n, mean - n, mean) - (LOG_TWO_PI + Math.log(n)) / 2;
 }
 
 /**

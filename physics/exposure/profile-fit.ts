@@ -13,6 +13,8 @@ import { poissonDeviance } from './deviance.ts';
 export interface ProfileFit {
   readonly counts: Float64Array;
   readonly offsets: Float64Array;
+  /** n + offset, the means at the reference, given too: where the offset is nearly −n, their sum has lost the digits. */
+  readonly means: Float64Array;
   /** The best parameters of the last call of `minimise`; its start is what they are set to before. */
   readonly parameters: Float64Array;
   /** Minimises D from `parameters`, to `relativeTolerance` of D. Returns D; ∞ when the start makes something impossible that happened. */
@@ -34,8 +36,11 @@ export function profileFit(rows: number, coefficients: readonly Float64Array[], 
   const size = coefficients.length;
   const counts = new Float64Array(rows);
   const offsets = new Float64Array(rows);
+  const means = new Float64Array(rows);
   const excess = new Float64Array(rows);
   const trialExcess = new Float64Array(rows);
+  const mean = new Float64Array(rows);
+  const trialMean = new Float64Array(rows);
   const parameters = new Float64Array(size);
   const trial = new Float64Array(size);
   const gradient = new Float64Array(size);
@@ -45,19 +50,23 @@ export function profileFit(rows: number, coefficients: readonly Float64Array[], 
   const weighted = new Float64Array(rows);
   const pulls = new Float64Array(rows);
 
-  /** Fills `into` with ν − n at `at`; returns D. */
-  function devianceAt(at: Float64Array, into: Float64Array): number {
-    into.set(offsets);
+  /** Fills in ν − n and ν at `at`; returns D. */
+  function devianceAt(at: Float64Array, intoExcess: Float64Array, intoMean: Float64Array): number {
+    intoExcess.set(offsets);
+    intoMean.set(means);
     for (let p = 0; p < size; p++) {
       const c = coefficients[p];
       const v = at[p];
-      for (let i = 0; i < rows; i++) into[i] += c[i] * v;
+      for (let i = 0; i < rows; i++) {
+        const change = c[i] * v;
+        intoExcess[i] += change;
+        intoMean[i] += change;
+      }
     }
     let sum = 0;
     for (let i = 0; i < rows; i++) {
-      const n = counts[i];
-      if (n > 0 && !(into[i] > -n)) return Infinity;
-      sum += poissonDeviance(n, into[i]);
+      if (counts[i] > 0 && !(intoMean[i] > 0)) return Infinity;
+      sum += poissonDeviance(counts[i], intoExcess[i], intoMean[i]);
     }
     return sum;
   }
@@ -65,9 +74,9 @@ export function profileFit(rows: number, coefficients: readonly Float64Array[], 
   /** Gradient g_p = Σ_i c_ip (1 − n_i/ν_i) and lower triangle of the Hessian Σ_i c_ip c_iq n_i/ν_i². */
   function differentiate(): void {
     for (let i = 0; i < rows; i++) {
-      const mean = counts[i] + excess[i];
-      weights[i] = mean > 0 ? (counts[i] / mean + CURVATURE_FLOOR) / mean : 0;
-      pulls[i] = mean > 0 ? excess[i] / mean : 1;
+      const nu = mean[i];
+      weights[i] = nu > 0 ? (counts[i] / nu + CURVATURE_FLOOR) / nu : 0;
+      pulls[i] = nu > 0 ? excess[i] / nu : 1;
     }
     for (let p = 0; p < size; p++) {
       const c = coefficients[p];
@@ -112,7 +121,7 @@ export function profileFit(rows: number, coefficients: readonly Float64Array[], 
   }
 
   function minimise(relativeTolerance: number): number {
-    let deviance = devianceAt(parameters, excess);
+    let deviance = devianceAt(parameters, excess, mean);
     for (let iteration = 0; iteration < LARGEST_STEPS; iteration++) {
       differentiate();
       holdAtBounds();
@@ -122,7 +131,7 @@ export function profileFit(rows: number, coefficients: readonly Float64Array[], 
       let reached = Infinity;
       for (let halving = 0; halving < LARGEST_HALVINGS; halving++) {
         moveTo(share);
-        reached = devianceAt(trial, trialExcess);
+        reached = devianceAt(trial, trialExcess, trialMean);
         if (reached < deviance) break;
         share /= 2;
       }
@@ -130,17 +139,18 @@ export function profileFit(rows: number, coefficients: readonly Float64Array[], 
       deviance = reached;
       parameters.set(trial);
       excess.set(trialExcess);
+      mean.set(trialMean);
     }
     return deviance;
   }
 
   function devianceOf(from: number, to: number): number {
     let sum = 0;
-    for (let i = from; i < to; i++) sum += poissonDeviance(counts[i], excess[i]);
+    for (let i = from; i < to; i++) sum += poissonDeviance(counts[i], excess[i], mean[i]);
     return sum;
   }
 
-  return { counts, offsets, parameters, minimise, devianceOf };
+  return { counts, offsets, means, parameters, minimise, devianceOf };
 }
 
 /**

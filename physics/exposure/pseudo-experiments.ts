@@ -199,8 +199,10 @@ function medianSignificance(
       const n = count(i);
       atTested.counts[i] = n;
       atTested.offsets[i] = meansTested[i] - n;
+      atTested.means[i] = meansTested[i];
       free.counts[i] = n;
       free.offsets[i] = meansFree[i] - n;
+      free.means[i] = meansFree[i];
     }
   };
   setCounts((i) => truth[i]);

@@ -7,7 +7,8 @@
  *
  * H is a piecewise cubic that matches H and its slope −η at both ends of each cell, H₂ its exact integral. H vanishes like
  * (v_max − v)³ at the edge (like its square where the laboratory is at rest), which a cubic reproduces: the relative accuracy
- * holds right up to v_max.
+ * holds right up to v_max. Where η jumps, H has a corner: there one section of the table ends and the next begins, as it does at the
+ * ends of a stretch over which η falls steeply.
  */
 import type { VelocityDistribution } from './velocity-distribution.ts';
 
@@ -20,22 +21,36 @@ export interface SpeedTail {
   readonly coefficients: Float64Array;
   /** H₂ at the lower end of each cell, km/s. */
   readonly secondTail: Float64Array;
-  /** The finer table that goes on where this one ends; without one, this one ends at the largest speed. */
+  /** The table, finer or of the next section, that goes on where this one ends; without one, this ends at the largest speed. */
   readonly top: SpeedTail | undefined;
 }
 
-/** Cells of the whole table, and of each finer one for its last speeds: near v_max relative accuracy needs ever finer cells. */
+/** Cells of the whole table, the fewest of a section of it, and of each finer one for its last speeds: near v_max relative accuracy needs ever finer cells. */
 const CELLS = 1024;
+const SECTION_CELLS = 256;
 const TOP_CELLS = 256;
 /** Cells that a finer table takes over, and how often that is repeated: down to 1e-5 of v_max. */
 const CELLS_TAKEN_OVER = 32;
 const FINER_TABLES = 4;
 
+/** The kinks, ascending, strictly between two speeds. There may be thousands: a tabulated η has one at each point. */
+function kinksBetween(kinks: readonly number[], from: number, to: number): readonly number[] {
+  let [low, high] = [0, kinks.length];
+  while (low < high) {
+    const middle = (low + high) >> 1;
+    if (kinks[middle] > from) high = middle;
+    else low = middle + 1;
+  }
+  let end = low;
+  while (end < kinks.length && kinks[end] < to) end++;
+  return kinks.slice(low, end);
+}
+
 /** ∫ η over [from, to], Simpson's rule on pieces divided at the kinks. `atFrom` and `atTo` are η at the ends. */
 function cellIntegral(halo: VelocityDistribution, from: number, to: number, atFrom: number, atTo: number): number {
   const simpson = (a: number, b: number, fa: number, fb: number): number =>
     ((b - a) / 6) * (fa + 4 * halo.meanInverseSpeed((a + b) / 2) + fb);
-  const kinks = halo.kinksKmPerS.filter((v) => v > from && v < to);
+  const kinks = kinksBetween(halo.kinksKmPerS, from, to);
   if (kinks.length === 0) return simpson(from, to, atFrom, atTo);
   const ends = [from, ...kinks, to];
   let sum = 0;
@@ -48,26 +63,48 @@ function cellIntegral(halo: VelocityDistribution, from: number, to: number, atFr
   return sum;
 }
 
+/** η just below a speed: the value before a jump. */
+function belowJump(halo: VelocityDistribution, vKmPerS: number): number {
+  return halo.meanInverseSpeed(vKmPerS * (1 - Number.EPSILON));
+}
+
 /**
  * Tabulates H and H₂ from `fromKmPerS` (≥ 0, below the largest speed) to the largest speed. Cost: two evaluations of η a cell.
  *
  * Accuracy: differences H(v₁) − H(v₂) to 1e-7 relative, typically 1e-9 (test/physics/halo/speed-tail.test.ts).
  */
 export function speedTail(halo: VelocityDistribution, fromKmPerS: number): SpeedTail {
-  return tabulate(halo, fromKmPerS, CELLS, FINER_TABLES);
+  const largest = halo.largestSpeedKmPerS;
+  const inside = (halo.sectionEndsKmPerS ?? []).filter((v) => v > fromKmPerS && v < largest);
+  const ends = [fromKmPerS, ...inside, largest];
+  const cellsOf = (from: number, to: number): number =>
+    Math.max(SECTION_CELLS, Math.ceil((CELLS * (to - from)) / (largest - fromKmPerS)));
+  let tail: SpeedTail | undefined;
+  for (let i = ends.length - 1; i > 0; i--) {
+    const [from, to] = [ends[i - 1], ends[i]];
+    tail = tabulate(halo, from, to, cellsOf(from, to), tail ? 0 : FINER_TABLES, tail);
+  }
+  return tail!;
 }
 
-function tabulate(halo: VelocityDistribution, fromKmPerS: number, wholeCells: number, finerTables: number): SpeedTail {
-  const cellKmPerS = (halo.largestSpeedKmPerS - fromKmPerS) / wholeCells;
+/** The table from one speed to another, its last cells in finer tables if so wanted; `next` goes on from there. */
+function tabulate(
+  halo: VelocityDistribution,
+  fromKmPerS: number,
+  toKmPerS: number,
+  wholeCells: number,
+  finerTables: number,
+  next: SpeedTail | undefined,
+): SpeedTail {
+  const cellKmPerS = (toKmPerS - fromKmPerS) / wholeCells;
   const cells = finerTables > 0 ? wholeCells - CELLS_TAKEN_OVER : wholeCells;
-  const topFromKmPerS = fromKmPerS + cells * cellKmPerS;
-  const top = finerTables > 0 ? tabulate(halo, topFromKmPerS, TOP_CELLS, finerTables - 1) : undefined;
+  let to = finerTables > 0 ? fromKmPerS + cells * cellKmPerS : toKmPerS;
+  let above = finerTables > 0 ? halo.meanInverseSpeed(to) : belowJump(halo, to);
+  const top = finerTables > 0 ? tabulate(halo, to, toKmPerS, TOP_CELLS, finerTables - 1, next) : next;
   const coefficients = new Float64Array(4 * cells);
   const secondTail = new Float64Array(cells);
   let tail = top ? top.coefficients[0] : 0;
   let second = top ? top.secondTail[0] : 0;
-  let to = top ? topFromKmPerS : halo.largestSpeedKmPerS;
-  let above = top ? halo.meanInverseSpeed(topFromKmPerS) : 0;
   for (let i = cells - 1; i >= 0; i--) {
     const from = fromKmPerS + i * cellKmPerS;
     const eta = halo.meanInverseSpeed(from);

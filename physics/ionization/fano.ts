@@ -10,13 +10,16 @@
  * N̄ = n + ½, which are the edges of the step model.
  */
 import { DomainError, requireNonNegative } from '../errors.ts';
-import { type IonizationWithReach, stepWithReach } from './charge-reach.ts';
-import { gaussianCells, normalBetween } from './gaussian-cells.ts';
+import type { IonizationModel } from './ionization-model.ts';
+import { stepIonization } from './step.ts';
+import { gaussianCells, normalBetween } from '../numeric/gaussian-cells.ts';
 
 /** Crystals have F near 0.1, uncorrelated pairs 1. */
 const LARGEST_FANO_FACTOR = 10;
 /** Below this the spread is less than the rounding of an energy: the step model. */
 const SMALLEST_FANO_FACTOR = 1e-30;
+/** See fanoIonization: 1.1e-5 for a spectrum that falls as exp(−E/ε). */
+const SEGMENT_ERROR = 2e-5;
 /** 1 − Φ of this is 6e-13: jumps and remainders beyond it are left out. */
 const NEGLIGIBLE_Z = 7.1;
 
@@ -29,8 +32,8 @@ const NEGLIGIBLE_Z = 7.1;
  * @param bandGapEv g, eV, ≥ 0. @param energyPerPairEv ε, eV, > 0, ≥ g. @param fanoFactor F, 0…10.
  * @throws DomainError outside these. @example fanoIonization(1.12, 3.8, 0.12)
  */
-export function fanoIonization(bandGapEv: number, energyPerPairEv: number, fanoFactor: number): IonizationWithReach {
-  const step = stepWithReach(bandGapEv, energyPerPairEv); // checks the gap and the energy per pair
+export function fanoIonization(bandGapEv: number, energyPerPairEv: number, fanoFactor: number): IonizationModel {
+  const step = stepIonization(bandGapEv, energyPerPairEv); // checks the gap and the energy per pair
   requireNonNegative('fanoFactor', fanoFactor);
   if (fanoFactor > LARGEST_FANO_FACTOR) {
     throw new DomainError('fanoFactor', fanoFactor, `at most ${LARGEST_FANO_FACTOR}`);
@@ -39,6 +42,8 @@ export function fanoIonization(bandGapEv: number, energyPerPairEv: number, fanoF
 
   return {
     bandGapEv,
+    segmentError: SEGMENT_ERROR,
+    lostFraction: () => 0,
     maxSegmentEv: Infinity, // the ladders are fine enough, and between them nothing changes
     breaksEv(fromEv, toEv) {
       const cuts = [

@@ -8,10 +8,16 @@
 export interface IonizationModel {
   /** Lowest energy that frees an electron, eV. */
   readonly bandGapEv: number;
-  /** Widest energy segment, eV, over which P(n|E) may be replaced by its value at the middle. Infinity for the step model. */
+  /** Widest energy segment, eV, over which P(n|E) may be replaced by its value at the middle. Infinity where the breaks suffice. */
   readonly maxSegmentEv: number;
-  /** Energies, eV, ascending, strictly between the limits, at which any P(n|E), n = 1…lastElectron+1, is discontinuous. */
+  /** What that rule leaves of error in a bin's rate, relative; 0 where it is exact. */
+  readonly segmentError: number;
+  /** Energies, eV, ascending, strictly between the limits, at which a segment must end. */
   breaksEv(fromEv: number, toEv: number): number[];
   /** Writes P(n|E) into out[n − 1] for n = 1…out.length; energies below the gap write zeros. */
   probabilities(energyEv: number, out: Float64Array): void;
+  /** Energy, eV, above which an event frees `electrons` or fewer (but at least one) with a probability below 1e-12. */
+  reachEv(electrons: number): number;
+  /** Share of events at this energy whose charge the model does not place in any bin: 1 − Σ P(n|E) over all n. */
+  lostFraction(energyEv: number): number;
 }

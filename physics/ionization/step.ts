@@ -22,6 +22,9 @@ export function stepIonization(bandGapEv: number, energyPerPairEv: number): Ioni
   return {
     bandGapEv,
     maxSegmentEv: Infinity,
+    segmentError: 0,
+    reachEv: (electrons) => stepEdgeEv(bandGapEv, energyPerPairEv, electrons + 1),
+    lostFraction: () => 0,
     breaksEv(fromEv, toEv) {
       const breaks: number[] = [];
       for (let n = Math.max(1, Math.floor((fromEv - bandGapEv) / energyPerPairEv)); ; n++) {

@@ -53,6 +53,11 @@ export const KINDS = {
   speed: kind('a speed', 'km/s', '238 km/s'),
   volume: kind('a volume', 'angstrom^3', '40 angstrom^3'),
   exposure: kind('an exposure', 'kg yr', '1 kg yr'),
+  rate: kind('a rate', '1/(kg yr)', '5 1/(kg yr)', ['kg^-1 yr^-1', 1]),
+  spectralRate: kind('a rate per energy', '1/(kg yr keV)', '1000 1/(kg yr keV)', ['kg^-1 yr^-1 keV^-1', 1]),
+  current: kind('a number per time', '1/day', '1e-4 1/day', ['day^-1', 1]),
+  detectorMass: kind('a mass', 'kg', '0.35 ug'),
+  duration: kind('a time', 'day', '1 day'),
 } as const satisfies Record<string, QuantityKind>;
 
 /** Unit names a quantity may use, SI prefixes written out: mathjs knows many more, some of them traps ("ton", "stick", "b"). */
@@ -61,7 +66,8 @@ const UNIT_NAMES = new Set([
   ...['', 'u', 'm', 'k'].map((prefix) => `${prefix}g`),
   ...['', 'f', 'p', 'n', 'u', 'm', 'c', 'k'].map((prefix) => `${prefix}m`),
   ...['', 'y', 'z', 'a', 'f', 'p', 'n', 'u', 'm'].map((prefix) => `${prefix}barn`),
-  ...['s', 'hour', 'hours', 'day', 'days', 'd', 'year', 'years', 'yr', 'gram', 'grams', 'tonne', 'tonnes'],
+  ...['s', 'ms', 'min', 'minute', 'minutes', 'h', 'hour', 'hours', 'd', 'day', 'days', 'week', 'weeks', 'yr', 'year', 'years'],
+  ...['gram', 'grams', 'tonne', 'tonnes'],
   ...['c', 'angstrom', 'bohr'],
 ]);
 const NUMBER = /^\s*([+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?)\s*\*?\s*(.*)$/s;

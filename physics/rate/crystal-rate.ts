@@ -73,6 +73,8 @@ export interface CrystalRate {
   /** Sum of the bins, and what lies above the last one, 1/(kg yr). */
   readonly total: Estimate;
   readonly overflow: Estimate;
+  /** Events whose charge the ionization model does not place in any bin, 1/(kg yr). */
+  readonly lost: Estimate;
   readonly spectrum: Spectrum | undefined;
   /** Largest energy the halo can give, eV; negative or below the gap where nothing is reached. */
   readonly largestEnergyEv: number;
@@ -85,7 +87,7 @@ export interface CrystalRate {
 const EDGE_STRIP = 0.05;
 
 /** Events per (kg yr) for each unit of the dimensionless integral: (ρ/m_χ)(1/M_cell) σ̄ₑ α (mₑ/μ)² c · yr. */
-function rateFactor(scenario: RateScenario): number {
+export function rateFactor(scenario: Omit<RateScenario, 'halo'>): number {
   const numberDensity = (scenario.localDensityGevPerCm3 * 1e9) / scenario.massEv; // cm⁻³
   const cellsPerKg = KILOGRAM_EV / scenario.table.cellMassEv;
   const massRatio = ELECTRON_MASS_EV / reducedMassEv(scenario.massEv);
@@ -130,7 +132,11 @@ export function crystalRate(scenario: RateScenario, wantSpectrum = false): Cryst
   const strips = [tableTop * (1 - EDGE_STRIP), lowest * (1 + EDGE_STRIP)];
 
   const binEdges = Array.from({ length: maxElectrons + 1 }, (_, i) => stepEdgeEv(gap, energyPerPairEv, i + 1));
-  const cuts = [...binEdges, ...ionization.breaksEv(gap, tableTop), ...strips];
+  const cuts = [
+    ...binEdges,
+    ...ionization.breaksEv(gap, Math.min(tableTop, ionization.reachEv(maxElectrons))),
+    ...strips,
+  ];
   const segments = energySegments(table, gap, cuts, ionization.maxSegmentEv);
   const { cutsEv, count } = segments;
   const empty = count === 0 || largest <= lowest;
@@ -163,19 +169,22 @@ export function crystalRate(scenario: RateScenario, wantSpectrum = false): Cryst
   const sums = new Float64Array(maxElectrons);
   const sumErrors = new Float64Array(maxElectrons);
   const weights = new Float64Array(maxElectrons);
-  let [above, aboveError] = [0, 0];
+  let [above, aboveError, lost, lostError] = [0, 0, 0, 0];
   for (let s = 0; s < count; s++) {
     if (perSegment[s] === 0) continue;
     const middle = (cutsEv[s] + cutsEv[s + 1]) / 2;
     ionization.probabilities(middle, weights);
-    let rest = 1;
+    const error = errors[s] + ionization.segmentError * perSegment[s];
+    const lostShare = ionization.lostFraction(middle);
+    let rest = 1 - lostShare;
     for (let n = 0; n < maxElectrons; n++) {
       sums[n] += weights[n] * perSegment[s];
-      sumErrors[n] += weights[n] * errors[s];
+      sumErrors[n] += weights[n] * error;
       rest -= weights[n];
     }
-    if (cutsEv[s] >= binEdges[maxElectrons])
-      [above, aboveError] = [above + rest * perSegment[s], aboveError + rest * errors[s]];
+    // a remainder of rounding is no overflow
+    if (rest > 1e-12) [above, aboveError] = [above + rest * perSegment[s], aboveError + rest * error];
+    [lost, lostError] = [lost + lostShare * perSegment[s], lostError + lostShare * error];
   }
   const estimate = (value: number, error: number): Estimate => ({
     value,
@@ -193,6 +202,7 @@ export function crystalRate(scenario: RateScenario, wantSpectrum = false): Cryst
     })),
     total,
     overflow: estimate(above, aboveError),
+    lost: estimate(lost, lostError),
     spectrum: wantSpectrum ? spectrumOf(table, cutsEv, perSegment, errors) : undefined,
     largestEnergyEv: largest,
     smallestMassEv: smallestMassEv(lowest, splittingEv, vMax),

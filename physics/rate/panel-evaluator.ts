@@ -49,7 +49,6 @@ export interface PanelEvaluator {
 export function panelEvaluator(integrand: RateIntegrand): PanelEvaluator {
   const { table, segments, massEv, splittingEv, tail, mediator } = integrand;
   const { cutsEv, count, column, share } = segments;
-  const { cells } = tail;
   const linear = table.axes === 'points';
   const stride = columnsOf(table);
   const conversion = formFactorPerValue(table);
@@ -67,31 +66,35 @@ export function panelEvaluator(integrand: RateIntegrand): PanelEvaluator {
     const { lower, upper } = node;
     const perEnergy = SPEED_OF_LIGHT_KM_PER_S / q; // speed, km/s, for each eV given
     const recoil = perEnergy * splittingEv + (SPEED_OF_LIGHT_KM_PER_S * q) / (2 * massEv);
-    const scale = perEnergy / tail.cellKmPerS;
-    const offset = (recoil - tail.fromKmPerS) / tail.cellKmPerS;
     const factor = (mediator(q) * conversion(q)) / q; // F² |f|²/value q⁻² · q
-    const slowTail = (at: number): number => tailAt(tail, cutsEv[at] * perEnergy + recoil);
-    const slowSecondTail = (at: number): number => secondTailAt(tail, cutsEv[at] * perEnergy + recoil);
+    const lowest = cutsEv[0] * perEnergy + recoil;
+    let section = tail;
+    let { cells } = section;
+    let scale = perEnergy / section.cellKmPerS; // cells for each eV given
+    let offset = (recoil - section.fromKmPerS) / section.cellKmPerS;
 
-    let x = cutsEv[0] * scale + offset;
-    let h = slowTail(0);
-    let h2 = linear ? slowSecondTail(0) : 0;
+    let h = tailAt(tail, lowest);
+    let h2 = linear ? secondTailAt(tail, lowest) : 0;
     let s = 0;
     while (s < count && h > 0) {
-      const next = cutsEv[s + 1] * scale + offset;
-      let hNext: number;
+      let next = cutsEv[s + 1] * scale + offset;
+      while (next >= cells && section.top) {
+        section = section.top;
+        cells = section.cells;
+        scale = perEnergy / section.cellKmPerS;
+        offset = (recoil - section.fromKmPerS) / section.cellKmPerS;
+        next = cutsEv[s + 1] * scale + offset;
+      }
+      let hNext = 0;
       let h2Next = 0;
       if (next < cells) {
         const i = next | 0;
         const t = next - i;
-        hNext = tailInCell(tail, i, t);
-        if (linear) h2Next = secondTailInCell(tail, i, t);
-      } else {
-        hNext = slowTail(s + 1);
-        if (linear) h2Next = slowSecondTail(s + 1);
+        hNext = tailInCell(section, i, t);
+        if (linear) h2Next = secondTailInCell(section, i, t);
       }
       if (linear) {
-        const b = (h2 - h2Next) / ((next - x) * tail.cellKmPerS) - hNext;
+        const b = (h2 - h2Next) / ((cutsEv[s + 1] - cutsEv[s]) * perEnergy) - hNext;
         lower[s] = factor * (h - hNext - b);
         upper[s] = factor * b;
       } else {
@@ -100,7 +103,6 @@ export function panelEvaluator(integrand: RateIntegrand): PanelEvaluator {
       s++;
       h = hNext;
       h2 = h2Next;
-      x = next;
     }
     lower.fill(0, s, node.reach);
     if (linear) upper.fill(0, s, node.reach);

@@ -45,7 +45,7 @@ interface EvaluatedPanel {
 
 /** Momenta the table covers out of those that the halo's kinematics allow at the lowest energy; undefined where there are none. */
 export function coveredMomentaEv(
-  integrand: RateIntegrand,
+  integrand: Pick<RateIntegrand, 'table' | 'segments' | 'massEv' | 'splittingEv'>,
   largestSpeedKmPerS: number,
 ): { readonly fromEv: number; readonly toEv: number } | undefined {
   const axis = integrand.table.momentumEv;
@@ -135,7 +135,11 @@ export function rateIntegral(
 }
 
 /** Momentum windows, eV, of the lowest energy of each group that can be reached. */
-function windowsOf(integrand: RateIntegrand, groupStarts: readonly number[], largestSpeedKmPerS: number) {
+export function windowsOf(
+  integrand: Pick<RateIntegrand, 'segments' | 'massEv' | 'splittingEv'>,
+  groupStarts: readonly number[],
+  largestSpeedKmPerS: number,
+) {
   const { massEv, splittingEv, segments } = integrand;
   return groupStarts.flatMap(
     (s) =>
@@ -144,7 +148,7 @@ function windowsOf(integrand: RateIntegrand, groupStarts: readonly number[], lar
 }
 
 /** Halves panels until none is wider than WINDOW_SHARE of a window it overlaps. */
-function resolveWindows(
+export function resolveWindows(
   boundaries: readonly number[],
   windows: readonly { readonly fromEv: number; readonly toEv: number }[],
 ): number[] {

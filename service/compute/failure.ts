@@ -1,7 +1,7 @@
 /** Errors as cloneable facts, and back. */
 import { DomainError } from '../../physics/errors.ts';
 import { DamagedTableError } from '../crystals/crystal-record.ts';
-import { type Fault, Problem, type ProblemType } from '../problem.ts';
+import { type Fault, type NamedCrystal, Problem, type ProblemType } from '../problem.ts';
 
 export type Failure =
   | {
@@ -9,7 +9,7 @@ export type Failure =
       readonly type: ProblemType;
       readonly detail: string;
       readonly faults: readonly Fault[];
-      readonly namedCrystal: string | undefined;
+      readonly namedCrystals: readonly NamedCrystal[];
     }
   | {
       readonly kind: 'domain';
@@ -27,8 +27,8 @@ export type Failure =
 
 export function failureOf(error: unknown): Failure {
   if (error instanceof Problem) {
-    const { type, message: detail, faults, namedCrystal } = error;
-    return { kind: 'problem', type, detail, faults, namedCrystal };
+    const { type, message: detail, faults, namedCrystals } = error;
+    return { kind: 'problem', type, detail, faults, namedCrystals };
   }
   if (error instanceof DomainError)
     return { kind: 'domain', parameter: error.parameter, value: String(error.value), allowed: error.allowed };
@@ -41,7 +41,7 @@ export function errorOf(failure: Failure): Error {
   switch (failure.kind) {
     case 'problem':
       return Object.assign(new Problem(failure.type, failure.detail, failure.faults), {
-        namedCrystal: failure.namedCrystal,
+        namedCrystals: failure.namedCrystals,
       });
     case 'domain':
       return new DomainError(failure.parameter, failure.value, failure.allowed);

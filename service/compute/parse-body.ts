@@ -1,7 +1,8 @@
 /** Bytes of a request body → validated input. Small ones on the event loop, large ones in a worker thread: the same function. */
 import { packTables } from '../crystals/matrix.ts';
-import { Problem } from '../problem.ts';
+import { type NamedCrystal, Problem, pointerOf } from '../problem.ts';
 import { BODIES, type BodyName } from '../schemas/bodies.ts';
+import { scenarioPlaces } from '../schemas/scenario-places.ts';
 import { parseInput } from '../validation.ts';
 
 export interface ParseJob {
@@ -18,14 +19,16 @@ export function parseBody({ body, bytes }: ParseJob): unknown {
   try {
     return parseInput(BODIES[body], json);
   } catch (error) {
-    if (error instanceof Problem) error.namedCrystal = namedCrystal(json);
+    if (error instanceof Problem) error.namedCrystals = namedCrystals(json);
     throw error;
   }
 }
 
-function namedCrystal(json: unknown): string | undefined {
-  const id = (json as { crystal?: { id?: unknown } } | null)?.crystal?.id;
-  return typeof id === 'string' ? id : undefined;
+function namedCrystals(json: unknown): NamedCrystal[] {
+  return scenarioPlaces(json).flatMap(({ path, scenario }) => {
+    const id = (scenario['crystal'] as { id?: unknown } | null | undefined)?.id;
+    return typeof id === 'string' ? [{ pointer: pointerOf([...path, 'crystal', 'id']), id }] : [];
+  });
 }
 
 function jsonOf(bytes: Uint8Array): unknown {
@@ -39,11 +42,13 @@ function jsonOf(bytes: Uint8Array): unknown {
   try {
     return JSON.parse(text);
   } catch (error) {
-    throw new Problem(
-      'malformed-body',
-      `The body is not JSON: ${(error as Error).message.replace(/\s+/g, ' ').slice(0, 200)}`,
-    );
+    throw new Problem('malformed-body', `The body is not JSON: ${reasonOf(error as SyntaxError)}.`);
   }
+}
+
+/** What the parser found, without the piece of the body that it quotes. */
+function reasonOf({ message }: SyntaxError): string {
+  return message.replace(/, (?:\.\.\.)?".*$/s, '').slice(0, 100);
 }
 
 /** Deepest nesting of brackets outside strings; stops counting once it is too deep. */

@@ -24,21 +24,24 @@ export function computePool({ workers, queue }: PoolOptions): Compute {
     filename: WORKER,
     minThreads: workers,
     maxThreads: workers,
-    // 0 would refuse every job that cannot start at once; piscina counts waiting jobs only
-    maxQueue: Math.max(1, queue),
     idleTimeout: Number.POSITIVE_INFINITY,
     ...(OWN_ENDING === 'ts' ? { execArgv: ['--import', 'tsx'] } : {}),
   });
+  // counted here: piscina's own bound does not see jobs that carry a signal
+  const mostJobs = workers + queue;
+  let jobs = 0;
   return {
     async run(task, input, options = {}) {
+      if (jobs >= mostJobs) throw new Problem('busy', 'Too many computations are waiting.', [], { 'Retry-After': '1' });
+      jobs++;
       let answer: WorkerAnswer;
       try {
         answer = (await pool.run({ task, input }, options.signal ? { signal: options.signal } : {})) as WorkerAnswer;
       } catch (error) {
         if (options.signal?.aborted) throw options.signal.reason;
-        if (/queue/i.test((error as Error).message))
-          throw new Problem('busy', 'Too many computations are waiting.', [], { 'Retry-After': '1' });
         throw error;
+      } finally {
+        jobs--;
       }
       if ('failure' in answer) throw errorOf(answer.failure);
       return answer.value as never;

@@ -2,11 +2,12 @@
  * What worker threads do, by name. Each is a plain function of cloneable data, so that tests can call it in-process too.
  */
 import { type BuiltIn, type CatalogueEntry, loadBuiltIn } from '../crystals/built-in.ts';
-import type { CrystalRecord } from '../crystals/crystal-record.ts';
+import type { StoredHeader, TableRecord } from '../crystals/crystal-record.ts';
 import { listTables, readHeader, readTable, removeTable, writeTable } from '../crystals/table-files.ts';
 import { type MeanInverseSpeedJob, meanInverseSpeedAnswer } from './mean-inverse-speed-answer.ts';
 import { type ParseJob, parseBody } from './parse-body.ts';
 import { type RatesJob, ratesAnswer } from './rates-answer.ts';
+import { type TradeOffsJob, tradeOffsAnswer } from './trade-offs-answer.ts';
 import { type ValuesJob, valuesText } from './values-text.ts';
 
 interface InFolder {
@@ -15,12 +16,14 @@ interface InFolder {
 
 export const TASKS = {
   rates: (job: RatesJob) => ratesAnswer(job),
+  tradeOffs: (job: TradeOffsJob) => tradeOffsAnswer(job),
   meanInverseSpeed: (job: MeanInverseSpeedJob) => meanInverseSpeedAnswer(job),
   parseBody: (job: ParseJob) => parseBody(job),
   valuesText: (job: ValuesJob) => valuesText(job),
   loadBuiltIn: (job: InFolder & { readonly entry: CatalogueEntry }): BuiltIn => loadBuiltIn(job.folder, job.entry),
-  readTable: (job: InFolder & { readonly id: string }): CrystalRecord | undefined => readTable(job.folder, job.id),
-  writeTable: (job: InFolder & { readonly record: CrystalRecord }) => writeTable(job.folder, job.record),
+  readTable: (job: InFolder & { readonly id: string }): TableRecord<StoredHeader> | undefined =>
+    readTable(job.folder, job.id),
+  writeTable: (job: InFolder & { readonly record: TableRecord<StoredHeader> }) => writeTable(job.folder, job.record),
   listTables: (job: InFolder) => listTables(job.folder),
   readHeaders: (job: InFolder & { readonly ids: readonly string[] }) =>
     job.ids.flatMap((id) => {

@@ -8,7 +8,7 @@ import { Problem } from '../problem.ts';
 import type { CrystalDescription, CrystalHeader } from '../schemas/crystal.ts';
 import type { BuiltIn } from './built-in.ts';
 import { type CrystalRecord, DamagedTableError } from './crystal-record.ts';
-import type { CrystalStore } from './crystal-store.ts';
+import type { TableStore } from './table-store.ts';
 
 export interface CrystalLibrary {
   /** By id or alias; undefined if there is none. Throws a Problem for a damaged one. */
@@ -26,7 +26,7 @@ export interface CrystalLibrary {
 
 export function crystalLibrary(
   builtIns: readonly BuiltIn[],
-  store: CrystalStore,
+  store: TableStore<CrystalHeader>,
   cacheBytes: number,
   onDamaged: (id: string, error: DamagedTableError) => void,
 ): CrystalLibrary {
@@ -106,7 +106,10 @@ export function crystalLibrary(
     },
     async list() {
       const stored = (await store.list())
-        .filter(({ id }) => !byId.has(id))
+        // a damaged file may hold a line of JSON that is no header; it is refused when it is loaded
+        .filter(
+          ({ id, header }) => !byId.has(id) && Array.isArray(header.momentumKev) && Array.isArray(header.energyEv),
+        )
         .sort((a, b) => compare(a.header.name, b.header.name) || compare(a.id, b.id));
       return [...builtIns.map(({ record }) => record), ...stored].map(({ id, header }) => describe(id, header));
     },

@@ -1,21 +1,27 @@
 /**
- * A stored crystal table and its canonical content: one line of canonical JSON (RFC 8785) that says everything but the values,
+ * A stored table and its canonical content: one line of canonical JSON (RFC 8785) that says everything but the values,
  * then the values as little-endian float64, row after row. The id is the SHA-256 of exactly these bytes, and a file in the store
  * holds exactly these bytes.
  */
 import { createHash } from 'node:crypto';
 import canonicalize from 'canonicalize';
 import type { CrystalTable } from '../../physics/crystal/crystal-table.ts';
+import type { ChargeHeader } from '../schemas/charge-table.ts';
 import type { CrystalHeader } from '../schemas/crystal.ts';
 
-export interface CrystalRecord {
+/** What is stored: a crystal's header with its values, or a charge table, which is all header. */
+export type StoredHeader = CrystalHeader | ChargeHeader;
+
+export interface TableRecord<H extends StoredHeader> {
   readonly id: string;
-  readonly header: CrystalHeader;
+  readonly header: H;
   /** Row-major, on shared memory: workers use it without a copy. */
   readonly values: Float64Array;
 }
 
-export const CRYSTAL_ID = /^[0-9a-f]{64}$/;
+export type CrystalRecord = TableRecord<CrystalHeader>;
+
+export const TABLE_ID = /^[0-9a-f]{64}$/;
 
 /** A table whose bytes are not what they should be. */
 export class DamagedTableError extends Error {}
@@ -27,7 +33,7 @@ export function shapeOf(header: CrystalHeader): { readonly rows: number; readonl
 }
 
 /** The canonical content. All machines this runs on are little-endian. */
-export function contentOf(header: CrystalHeader, values: Float64Array): Buffer {
+export function contentOf(header: StoredHeader, values: Float64Array): Buffer {
   const line = Buffer.from(`${canonicalize(header)}\n`, 'utf8');
   return Buffer.concat([line, Buffer.from(values.buffer, values.byteOffset, values.byteLength)]);
 }
@@ -37,10 +43,10 @@ export function idOf(content: Buffer): string {
 }
 
 /** Reads canonical content back and checks it against its id; throws DamagedTableError. */
-export function recordOf(id: string, content: Buffer): CrystalRecord {
+export function recordOf(id: string, content: Buffer): TableRecord<StoredHeader> {
   if (idOf(content) !== id) throw new DamagedTableError('content does not match its hash');
   const { header, end } = headerOf(content);
-  const { rows, columns } = shapeOf(header);
+  const { rows, columns } = 'axes' in header ? shapeOf(header) : { rows: 0, columns: 0 };
   if (content.length - end !== 8 * rows * columns) throw new DamagedTableError('content does not match its axes');
   const shared = new SharedArrayBuffer(8 * rows * columns);
   new Uint8Array(shared).set(content.subarray(end));
@@ -48,11 +54,11 @@ export function recordOf(id: string, content: Buffer): CrystalRecord {
 }
 
 /** The header at the beginning of canonical content, and where the values begin. */
-export function headerOf(content: Buffer): { readonly header: CrystalHeader; readonly end: number } {
+export function headerOf(content: Buffer): { readonly header: StoredHeader; readonly end: number } {
   const newline = content.indexOf(0x0a);
   if (newline < 0) throw new DamagedTableError('has no header');
   try {
-    return { header: JSON.parse(content.toString('utf8', 0, newline)) as CrystalHeader, end: newline + 1 };
+    return { header: JSON.parse(content.toString('utf8', 0, newline)) as StoredHeader, end: newline + 1 };
   } catch {
     throw new DamagedTableError('has an unreadable header');
   }

@@ -1,17 +1,19 @@
 /** Uploaded tables as files in a directory (crystals/table-files), read and written by the worker pool. */
 import type { Compute } from '../compute/compute.ts';
-import type { CrystalHeader } from '../schemas/crystal.ts';
-import { CRYSTAL_ID } from './crystal-record.ts';
-import type { CrystalStore } from './crystal-store.ts';
+import { type StoredHeader, TABLE_ID, type TableRecord } from './crystal-record.ts';
+import type { TableStore } from './table-store.ts';
 
 /** Headers kept in memory, so that a list does not open every file every time. */
 const MOST_HEADERS = 10_000;
 
-export function directoryStore(folder: string, compute: Compute): CrystalStore {
-  const headers = new Map<string, CrystalHeader>();
+/** The store in `folder`, which holds one kind of table. */
+export function directoryStore<H extends StoredHeader>(folder: string, compute: Compute): TableStore<H> {
+  const headers = new Map<string, H>();
   return {
     async get(id) {
-      return CRYSTAL_ID.test(id) ? compute.run('readTable', { folder, id }) : undefined;
+      return TABLE_ID.test(id)
+        ? ((await compute.run('readTable', { folder, id })) as TableRecord<H> | undefined)
+        : undefined;
     },
     async put(record) {
       return compute.run('writeTable', { folder, record });
@@ -21,15 +23,15 @@ export function directoryStore(folder: string, compute: Compute): CrystalStore {
       const missing = ids.filter((id) => !headers.has(id));
       const read = missing.length > 0 ? await compute.run('readHeaders', { folder, ids: missing }) : [];
       if (headers.size + read.length > MOST_HEADERS) headers.clear();
-      for (const { id, header } of read) headers.set(id, header);
-      const fresh = new Map(read.map(({ id, header }) => [id, header]));
+      for (const { id, header } of read) headers.set(id, header as H);
       return ids.flatMap((id) => {
-        const header = headers.get(id) ?? fresh.get(id);
+        const header = headers.get(id);
         return header ? [{ id, header }] : [];
       });
     },
     async remove(id) {
-      return CRYSTAL_ID.test(id) ? compute.run('removeTable', { folder, id }) : false;
+      headers.delete(id);
+      return TABLE_ID.test(id) ? compute.run('removeTable', { folder, id }) : false;
     },
   };
 }

@@ -4,6 +4,7 @@
  */
 import type { Fault } from '../problem.ts';
 import { MOST_FAULTS } from '../problem.ts';
+import { scenarioPlaces } from '../schemas/scenario-places.ts';
 
 export interface PackedMatrix {
   readonly packed: true;
@@ -42,9 +43,10 @@ export function packMatrix(rows: unknown): unknown {
     for (let j = 0; j < row.length; j++, at++) {
       const value: unknown = row[j];
       if (typeof value !== 'number') fault(`/${i}/${j}`, `must be a number of at least 0; got ${kindOf(value)}`);
-      else if (!(value >= 0 && value < Infinity))
-        fault(`/${i}/${j}`, `must be a finite number of at least 0; got ${value}`);
-      else values[at] = value;
+      else if (!(value < Infinity))
+        fault(`/${i}/${j}`, 'must be a number of at least 0; got one beyond all that can be held');
+      else if (!(value >= 0)) fault(`/${i}/${j}`, `must be a number of at least 0; got ${value}`);
+      else values[at] = value + 0; // −0 is 0, or the same table would have two ids
     }
   });
   return { packed: true, rowLengths, values, faults, faultCount } satisfies PackedMatrix;
@@ -55,11 +57,13 @@ function kindOf(value: unknown): string {
   return Array.isArray(value) ? 'a list' : `a ${typeof value}`;
 }
 
-/** Replaces every matrix in a request body (a table, or a scenario with a table inline) by its packed form, in place. */
+/** Replaces every matrix in a request body (a table, or a table inline in a scenario) by its packed form, in place. */
 export function packTables(body: unknown): void {
-  for (const holder of [body, (body as { crystal?: unknown } | null | undefined)?.crystal]) {
-    if (typeof holder !== 'object' || holder === null) continue;
-    const table = holder as Record<string, unknown>;
-    for (const field of MATRIX_FIELDS) if (Object.hasOwn(table, field)) table[field] = packMatrix(table[field]);
+  for (const { scenario } of scenarioPlaces(body)) {
+    for (const holder of [scenario, scenario['crystal']]) {
+      if (typeof holder !== 'object' || holder === null) continue;
+      const table = holder as Record<string, unknown>;
+      for (const field of MATRIX_FIELDS) if (Object.hasOwn(table, field)) table[field] = packMatrix(table[field]);
+    }
   }
 }

@@ -6,8 +6,7 @@
  */
 import fs from 'node:fs';
 import path from 'node:path';
-import type { CrystalHeader } from '../schemas/crystal.ts';
-import { CRYSTAL_ID, type CrystalRecord, contentOf, headerOf, recordOf } from './crystal-record.ts';
+import { contentOf, headerOf, recordOf, type StoredHeader, TABLE_ID, type TableRecord } from './crystal-record.ts';
 
 const ENDING = '.table';
 const TEMPORARY = '.part';
@@ -19,11 +18,11 @@ export function fileOf(folder: string, id: string): string {
 }
 
 /** Stores a table; `created` is false if the same one is already there. Throws the system's error where the disk refuses. */
-export function writeTable(folder: string, { id, header, values }: CrystalRecord): { created: boolean } {
+export function writeTable(folder: string, { id, header, values }: TableRecord<StoredHeader>): { created: boolean } {
   const content = contentOf(header, values);
   const file = fileOf(folder, id);
   if (holds(file, content)) return { created: false };
-  fs.mkdirSync(folder, { recursive: true });
+  makeFolder(folder);
   const temporary = path.join(folder, `${id}-${process.pid}-${process.hrtime.bigint()}${TEMPORARY}`);
   try {
     const descriptor = fs.openSync(temporary, 'wx');
@@ -40,6 +39,16 @@ export function writeTable(folder: string, { id, header, values }: CrystalRecord
   }
   syncFolder(folder);
   return { created: true };
+}
+
+/** A read-only file system answers a recursive mkdir with ENOENT: told as what it is. */
+function makeFolder(folder: string): void {
+  try {
+    fs.mkdirSync(folder, { recursive: true });
+  } catch (error) {
+    if ((error as NodeJS.ErrnoException).code !== 'ENOENT') throw error;
+    throw Object.assign(new Error(`cannot create ${folder}`, { cause: error }), { code: 'EROFS' });
+  }
 }
 
 /** Whether the file has exactly this content: a damaged one is written again. */
@@ -60,20 +69,25 @@ function syncFolder(folder: string): void {
   }
 }
 
+/** Whether there is no such file, or no such folder: a DATA_DIR that cannot be is an empty one to a reader. */
+function isAbsent(error: unknown): boolean {
+  return ['ENOENT', 'ENOTDIR'].includes((error as NodeJS.ErrnoException).code ?? '');
+}
+
 /** Loads a table and checks it against its id; undefined if there is none. Throws DamagedTableError. */
-export function readTable(folder: string, id: string): CrystalRecord | undefined {
+export function readTable(folder: string, id: string): TableRecord<StoredHeader> | undefined {
   let content: Buffer;
   try {
     content = fs.readFileSync(fileOf(folder, id));
   } catch (error) {
-    if ((error as NodeJS.ErrnoException).code === 'ENOENT') return undefined;
+    if (isAbsent(error)) return undefined;
     throw error;
   }
   return recordOf(id, content);
 }
 
 /** The header of a stored table, without its values; undefined where it is gone or unreadable. */
-export function readHeader(folder: string, id: string): CrystalHeader | undefined {
+export function readHeader(folder: string, id: string): StoredHeader | undefined {
   const chunk = Buffer.alloc(65_536);
   const parts: Buffer[] = [];
   let descriptor: number | undefined;
@@ -98,13 +112,13 @@ export function listTables(folder: string): string[] {
   try {
     names = fs.readdirSync(folder);
   } catch (error) {
-    if ((error as NodeJS.ErrnoException).code === 'ENOENT') return [];
+    if (isAbsent(error)) return [];
     throw error;
   }
   return names
     .filter((name) => name.endsWith(ENDING))
     .map((name) => name.slice(0, -ENDING.length))
-    .filter((id) => CRYSTAL_ID.test(id))
+    .filter((id) => TABLE_ID.test(id))
     .sort();
 }
 
@@ -114,7 +128,7 @@ export function removeTable(folder: string, id: string): boolean {
     fs.unlinkSync(fileOf(folder, id));
     return true;
   } catch (error) {
-    if ((error as NodeJS.ErrnoException).code === 'ENOENT') return false;
+    if (isAbsent(error)) return false;
     throw error;
   }
 }

@@ -22,13 +22,17 @@ function unknownTable(name: string): Problem {
   return new Problem('not-found', `No table has the id or alias "${name}"; GET /v1/crystals lists them.`);
 }
 
-/** Validators of a table's representation: immutable by id, to be asked again by alias. Answers 304 itself. */
-function cached(c: Context, id: string, isAlias: boolean, variant: string): Response | undefined {
+/**
+ * Validators of a table's representation: immutable by id, to be asked again by alias; and whether the caller has it already.
+ * They go into the answer itself, not into the context: a failure must not carry them.
+ */
+function validatorsOf(c: Context, id: string, isAlias: boolean, variant: string) {
   const tag = `"${id}${variant}"`;
-  c.header('ETag', tag);
-  c.header('Cache-Control', isAlias ? 'no-cache' : IMMUTABLE);
   const known = (c.req.header('if-none-match') ?? '').split(',').map((entry) => entry.trim().replace(/^W\//, ''));
-  return known.includes(tag) || known.includes('*') ? c.body(null, 304) : undefined;
+  return {
+    headers: { ETag: tag, 'Cache-Control': isAlias ? 'no-cache' : IMMUTABLE },
+    unchanged: known.includes(tag) || known.includes('*'),
+  };
 }
 
 export const postCrystal = defineRoute({
@@ -109,7 +113,8 @@ export const getCrystal = defineRoute({
     const name = c.req.param('id')!;
     const description = await crystals.describe(name);
     if (!description) throw unknownTable(name);
-    return cached(c, description.id, crystals.isAlias(name), '') ?? c.json(description);
+    const { headers, unchanged } = validatorsOf(c, description.id, crystals.isAlias(name), '');
+    return unchanged ? c.body(null, 304, headers) : c.json(description, 200, headers);
   },
 });
 
@@ -127,10 +132,10 @@ export const getCrystalValues = defineRoute({
     const name = c.req.param('id')!;
     const record = await crystals.find(name);
     if (!record) throw unknownTable(name);
-    const unchanged = cached(c, record.id, crystals.isAlias(name), '-values');
-    if (unchanged) return unchanged;
+    const { headers, unchanged } = validatorsOf(c, record.id, crystals.isAlias(name), '-values');
+    if (unchanged) return c.body(null, 304, headers);
     const text = await compute.run('valuesText', { header: record.header, values: record.values }, { signal });
-    return c.body(text as Uint8Array<ArrayBuffer>, 200, { 'Content-Type': mediaType });
+    return c.body(text as Uint8Array<ArrayBuffer>, 200, { ...headers, 'Content-Type': mediaType });
   },
 });
 

@@ -53,9 +53,10 @@ export const rates = defineRoute({
   },
   responses: { 200: { description: 'Rates, and the exposure if there is a goal.', schema: RatesAnswer } },
   problems: ['malformed-body', 'not-acceptable', 'too-large', 'media-type', 'invalid-input', 'busy'],
-  async handle({ c, body, dependencies: { crystals, compute, version }, signal }) {
+  async handle({ c, body, dependencies, signal }) {
     negotiate(c, ['application/json']);
-    const { scenario, table } = await resolveScenario(body, crystals);
+    const { crystals, compute, version } = dependencies;
+    const { scenario, table } = await resolveScenario(body, dependencies);
     const id = scenario.crystal.id;
     const began = performance.now();
     const answer = await crystals.using(id, () => compute.run('rates', { scenario, table }, { signal }));

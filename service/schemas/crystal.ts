@@ -63,17 +63,23 @@ function axis(id: string, of: QuantityKind, what: string) {
       const numbers = Array.isArray(given)
         ? given
         : Array.from({ length: given.count }, (_, i) => given.start + i * given.step);
-      const offender = numbers.findIndex(
-        (value, i) => !(value >= 0 && value < Infinity) || (i > 0 && !(value > numbers[i - 1])),
+      const values = Number.isNaN(factor) ? numbers : numbers.map((value) => value * factor);
+      const offender = values.findIndex(
+        (value, i) => !(value >= 0 && value < Infinity) || (i > 0 && !(value > values[i - 1])),
       );
       if (offender >= 0) {
         const path = Array.isArray(given) ? [kind, offender] : [kind];
-        const message = `must be at least 0 and strictly increasing; number ${offender} is ${numbers[offender]}`;
+        const is = Number.isFinite(numbers[offender]) ? numbers[offender] : 'beyond all that can be held';
+        const message = `must be finite, at least 0 and strictly increasing; number ${offender} is ${is}`;
         context.addIssue({ code: 'custom', path, message });
       }
-      return { kind, values: numbers.map((value) => value * factor) };
+      return { kind, values };
     });
 }
+
+/** Text that has a UTF-8 form, and so a hash. */
+const wholeText = (text: string): boolean => !/\p{Surrogate}/u.test(text);
+const WHOLE_TEXT = 'must be whole Unicode characters; half a surrogate pair is none';
 
 const Matrix = z
   .custom<PackedMatrix>(isPackedMatrix, { error: () => 'must be a list of rows, one for each momentum, of numbers' })
@@ -131,8 +137,13 @@ export interface CrystalInput {
 
 const tableFields = z
   .strictObject({
-    name: z.string().min(1).max(200),
-    source: z.string().max(5000).optional().meta({ description: 'Where the numbers come from.' }),
+    name: z.string().min(1).max(200).refine(wholeText, WHOLE_TEXT),
+    source: z
+      .string()
+      .max(5000)
+      .refine(wholeText, WHOLE_TEXT)
+      .optional()
+      .meta({ description: 'Where the numbers come from.' }),
     screened: z
       .boolean()
       .default(false)
@@ -192,9 +203,12 @@ function checkTable(input: unknown, context: z.RefinementCtx): void {
     );
   if (table.lossFunction !== undefined && table.cellVolume === undefined)
     issue(['cellVolume'], 'a loss function needs the volume of the cell');
+  const read = (field: string): boolean => !context.issues.some(({ path }) => path?.[0] === field);
   if (
     typeof table.bandGap === 'number' &&
     typeof table.energyPerPair === 'number' &&
+    read('bandGap') &&
+    read('energyPerPair') &&
     table.energyPerPair < table.bandGap
   ) {
     issue(['energyPerPair'], `must be at least the band gap, ${table.bandGap} eV`);

@@ -15,7 +15,12 @@ const Speeds = z
   .transform((input, context): number[] => {
     try {
       const factor = quantityOf(1, input.unit, KINDS.speed);
-      return input.values.map((value) => value * factor);
+      const speeds = input.values.map((value) => value * factor);
+      speeds.forEach((speed, i) => {
+        if (speed === Infinity)
+          context.addIssue({ code: 'custom', path: ['values', i], message: 'is beyond all that can be held' });
+      });
+      return speeds;
     } catch (error) {
       if (!(error instanceof QuantityError)) throw error;
       context.addIssue({ code: 'custom', path: ['unit'], message: error.message });

@@ -48,30 +48,24 @@ export function quantity(id: string, of: QuantityKind, domain: Domain, descripti
 
 export { KINDS };
 
-/** A number with its unit, and the error of its integration where it has one. */
-export interface QuantityOut {
-  readonly value: number;
-  readonly unit: string;
-  readonly relativeError?: number;
+/** Schema of a quantity out. */
+export function quantityOut<U extends string>(unit: U) {
+  return z.strictObject({ value: z.number(), unit: z.literal(unit) });
 }
 
-/** Schema of a quantity out. */
-export function quantityOut(unit: string, options: { readonly relativeError?: boolean } = {}) {
+/** Schema of a quantity out that was integrated numerically. */
+export function estimateOut<U extends string>(unit: U) {
   return z.strictObject({
     value: z.number(),
     unit: z.literal(unit),
-    ...(options.relativeError
-      ? {
-          relativeError: z
-            .number()
-            .min(0)
-            .meta({ description: 'Estimated error of the integration, relative; 0 for an exact zero.' }),
-        }
-      : {}),
+    relativeError: z
+      .number()
+      .min(0)
+      .meta({ description: 'Estimated error of the integration, relative; 0 for an exact zero.' }),
   });
 }
 
 /** Schema of an array of numbers with one unit. */
-export function quantitiesOut(unit: string) {
+export function quantitiesOut<U extends string>(unit: U) {
   return z.strictObject({ unit: z.literal(unit), values: z.array(z.number()) });
 }

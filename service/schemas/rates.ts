@@ -1,8 +1,8 @@
 /** The answer of POST /v1/rates. */
 import { z } from 'zod';
-import { quantityOut } from './quantity.ts';
+import { estimateOut, quantitiesOut, quantityOut } from './quantity.ts';
 
-const RATE = quantityOut('1/(kg yr)', { relativeError: true });
+const RATE = estimateOut('1/(kg yr)');
 
 export const Notice = z
   .strictObject({
@@ -34,22 +34,73 @@ const Bin = z
     description: 'Rate of events that free exactly this many electrons; half-open in energy, [from, to).',
   });
 
-const Exposure = z
+const Check = z
   .strictObject({
-    needed: z
-      .strictObject({ value: z.number(), unit: z.literal('kg yr'), relativeError: z.number().min(0) })
-      .nullable()
-      .meta({
-        description: 'The smallest exposure that reaches the goal; null where none does, and a notice says why.',
-      }),
-    signalRate: RATE.meta({ description: 'Rate in the window.' }),
-    expectedSignal: z
+    experiments: z.int(),
+    seed: z.int(),
+    quantity: z.enum(['fraction', 'mean-upper-limit', 'median-significance']).meta({
+      description:
+        'fraction: of experiments with the events asked for; mean-upper-limit: events, without signal; median-significance: σ, with ' +
+        'signal for a discovery, without for an exclusion.',
+    }),
+    achieved: z.number(),
+    standardError: z.number().meta({ description: 'Of achieved, from the number of experiments.' }),
+    expected: z.number().meta({ description: 'What the formula says.' }),
+    coverage: z
       .number()
+      .optional()
+      .meta({ description: 'Share of experiments with signal whose upper limit is not below it.' }),
+  })
+  .meta({ id: 'Check', description: 'Simulated experiments at the needed exposure.' });
+
+const Calendar = z
+  .strictObject({
+    duration: quantityOut('day').nullable().meta({ description: 'From the start of the payload.' }),
+    reached: z
+      .string()
       .nullable()
-      .meta({ description: 'Events expected in the window at the needed exposure.' }),
+      .meta({ description: 'UTC day; null without a start date, or where the goal is not reached.' }),
+  })
+  .meta({ id: 'Calendar', description: 'When the payload reaches the needed exposure.' });
+
+export const Exposure = z
+  .strictObject({
+    needed: estimateOut('kg yr').nullable().meta({
+      description:
+        'The smallest exposure from which the goal holds, live mass × time; null where none does, and a notice says why.',
+    }),
+    signalRate: RATE.meta({ description: 'Signal measured in the window.' }),
+    backgroundRate: quantityOut('1/(kg yr)').meta({ description: 'All backgrounds in the window.' }),
+    expectedSignal: z.number().nullable().meta({ description: 'Events in the window at the needed exposure.' }),
     expectedBackground: z.number().nullable(),
+    binding: z
+      .enum(['events', 'upper-limit', 'significance', 'minimum-events'])
+      .nullable()
+      .meta({ description: 'Which condition sets the exposure.' }),
+    largestSignificance: z
+      .number()
+      .optional()
+      .meta({ description: 'σ that no exposure passes, where uncertain backgrounds are the reason.' }),
+    requiredSignificance: z.number().optional(),
+    check: Check.optional(),
+    calendar: Calendar.optional(),
   })
   .meta({ id: 'Exposure' });
+
+const Measured = z
+  .strictObject({
+    bins: z.array(z.strictObject({ electrons: z.int(), signal: RATE, background: quantityOut('1/(kg yr)') })).meta({
+      description: 'Measured electrons 0…maxElectrons; bin 0 is shown, never counted. background: all of them.',
+    }),
+    backgrounds: z.array(z.strictObject({ name: z.string(), rates: quantitiesOut('1/(kg yr)') })).meta({
+      description: 'Each background in measured bins 0…maxElectrons.',
+    }),
+    responseMatrix: z.array(z.array(z.number())).optional().meta({
+      description:
+        'P(n|k) of the noise: a row for each true k from 0; columns n = 0…maxElectrons and, last, all above. Rows sum to 1.',
+    }),
+  })
+  .meta({ id: 'Measured', description: 'What the detector measures, after noise and efficiency.' });
 
 const SpectrumOut = z
   .strictObject({
@@ -71,6 +122,8 @@ export const RatesAnswer = z
     bins: z.array(Bin),
     total: RATE.meta({ description: 'Sum of the bins.' }),
     overflow: RATE.meta({ description: 'What lies above the last bin.' }),
+    lostCharge: RATE.optional().meta({ description: 'Events whose charge a table of P(n|E) places in no bin.' }),
+    measured: Measured.optional().meta({ description: 'With a readout or backgrounds; bins stay the true electrons.' }),
     exposure: Exposure.optional(),
     spectrum: SpectrumOut.optional(),
     notices: z.array(Notice),

@@ -3,8 +3,11 @@ import { z } from 'zod';
 import type { Mediator } from '../../physics/mediator/mediator.ts';
 import type { CrystalInput } from './crystal.ts';
 import { CrystalTableIn } from './crystal.ts';
+import { type BackgroundIn, Backgrounds, Payload, type PayloadStage, Readout, type ReadoutIn } from './detector.ts';
+import { Goal, type GoalIn } from './goal.ts';
 import { DEFAULT_HALO, Halo, type HaloIn } from './halo.ts';
-import { ABOVE_ZERO, ANY_SIGN, AT_LEAST_ZERO, KINDS, quantity } from './quantity.ts';
+import { DEFAULT_IONIZATION, Ionization, type IonizationIn } from './ionization.ts';
+import { ABOVE_ZERO, ANY_SIGN, KINDS, quantity } from './quantity.ts';
 
 export interface DarkMatterIn {
   readonly massMev: number;
@@ -71,119 +74,88 @@ export const Crystal = z
   .meta({ id: 'Crystal' });
 export type CrystalIn = { readonly id: string } | CrystalInput;
 
-export interface IonizationIn {
-  readonly bandGapEv: number | undefined;
-  readonly energyPerPairEv: number | undefined;
-  readonly maxElectrons: number;
-}
-
-const Ionization = z
-  .strictObject({
-    bandGap: quantity('IonizationBandGap', KINDS.energy, AT_LEAST_ZERO, 'Band gap; default: the table’s.').optional(),
-    energyPerPair: quantity(
-      'IonizationEnergyPerPair',
-      KINDS.energy,
-      ABOVE_ZERO,
-      'Mean energy per electron; default: the table’s.',
-    ).optional(),
-    maxElectrons: z.int().min(1).max(100).default(15).meta({ description: 'Last electron bin returned.' }),
-  })
-  .refine(
-    (i) => !(typeof i?.bandGap === 'number' && typeof i.energyPerPair === 'number' && i.energyPerPair < i.bandGap),
-    {
-      when: () => true,
-      path: ['energyPerPair'],
-      message: 'must be at least the band gap',
-    },
-  )
-  .meta({
-    id: 'Ionization',
-    description: 'E frees n = 1 + floor((E − bandGap)/energyPerPair) electrons, nothing below the gap.',
-  })
-  .transform(
-    (i): IonizationIn => ({ bandGapEv: i.bandGap, energyPerPairEv: i.energyPerPair, maxElectrons: i.maxElectrons }),
-  );
-
-const Window = z
-  .strictObject({ from: z.int().min(1).max(100), to: z.int().min(1).max(100) })
-  .refine((w) => !(typeof w?.from === 'number' && typeof w.to === 'number' && w.from > w.to), {
-    when: () => true,
-    path: ['to'],
-    message: 'must not be below "from"',
-  })
-  .meta({ id: 'Window', description: 'Electron bins that count, both ends included; default all of them.' });
-
-const probability = z.number().gt(0).lt(1);
-
-const Goal = z
-  .discriminatedUnion(
-    'kind',
-    [
-      z
-        .strictObject({ kind: z.literal('events'), count: z.number().positive().max(1e12), window: Window.optional() })
-        .meta({
-          id: 'EventsGoal',
-          description: 'So many events expected.',
-        }),
-      z
-        .strictObject({
-          kind: z.literal('detection'),
-          atLeast: z.int().min(1).max(1_000_000),
-          probability: probability.meta({ examples: [0.9] }),
-          window: Window.optional(),
-        })
-        .meta({ id: 'DetectionGoal', description: 'At least so many events with this probability (Poisson).' }),
-      z
-        .strictObject({
-          kind: z.literal('exclusion'),
-          confidence: probability.meta({ examples: [0.9] }),
-          window: Window.optional(),
-        })
-        .meta({
-          id: 'ExclusionGoal',
-          description:
-            'Excluding the scenario at this confidence if nothing is seen: −ln(1 − confidence) expected events.',
-        }),
-    ],
-    { error: () => 'must be "events", "detection" or "exclusion"' },
-  )
-  .meta({ id: 'Goal', description: 'What the exposure is to achieve.' });
-export type GoalIn = z.output<typeof Goal>;
-
 export interface ScenarioIn {
   readonly darkMatter: DarkMatterIn;
   readonly halo: HaloIn;
   readonly crystal: CrystalIn;
   readonly ionization: IonizationIn;
+  readonly readout: ReadoutIn | undefined;
+  readonly backgrounds: readonly BackgroundIn[];
   readonly goal: GoalIn | undefined;
+  readonly payload: readonly PayloadStage[] | undefined;
   readonly spectrum: boolean;
 }
 
-/** Faults between sections; runs on whatever could be read. */
+/** Faults between sections; runs on whatever could be read, so every step is taken with care. */
 function checkScenario(input: unknown, context: z.RefinementCtx): void {
   if (typeof input !== 'object' || input === null || Array.isArray(input)) return;
-  const { ionization, goal, darkMatter } = input as Partial<ScenarioIn>;
-  const last = ionization === undefined ? DEFAULT_IONIZATION.maxElectrons : ionization?.maxElectrons;
-  const to = (goal as { window?: { to?: unknown } } | undefined)?.window?.to;
-  if (typeof last === 'number' && typeof to === 'number' && to > last) {
-    context.addIssue({
-      code: 'custom',
-      path: ['goal', 'window', 'to'],
-      message: `is beyond the last bin, maxElectrons = ${last}`,
-    });
+  const {
+    ionization = DEFAULT_IONIZATION,
+    goal,
+    darkMatter,
+    readout,
+    backgrounds,
+    payload,
+  } = input as Partial<ScenarioIn>;
+  const issue = (path: (string | number)[], message: string): void =>
+    context.addIssue({ code: 'custom', path, message });
+  const last = ionization?.maxElectrons;
+  if (typeof last === 'number') {
+    for (const end of ['from', 'to'] as const) {
+      const electrons = goal?.window?.[end];
+      if (typeof electrons === 'number' && electrons > last)
+        issue(['goal', 'window', end], `is beyond the last bin, maxElectrons = ${last}`);
+    }
+    const efficiency = readout?.efficiency;
+    if (Array.isArray(efficiency) && efficiency.length !== last + 1) {
+      issue(
+        ['readout', 'efficiency'],
+        `has ${efficiency.length} numbers; the measured bins 0…${last} need ${last + 1}`,
+      );
+    }
   }
   const gap = ionization?.bandGapEv;
   const splitting = darkMatter?.massSplittingEv;
   if (typeof gap === 'number' && typeof splitting === 'number' && splitting < 0 && splitting <= -gap) {
-    context.addIssue({
-      code: 'custom',
-      path: ['darkMatter', 'massSplitting'],
-      message: `must be above minus the band gap, ${-gap} eV`,
-    });
+    issue(['darkMatter', 'massSplitting'], `must be above minus the band gap, ${-gap} eV`);
   }
+  if (Array.isArray(backgrounds)) checkBackgrounds(backgrounds, goal, last, issue);
+  if (goal?.kind === 'exclusion' && goal.method === 'unified' && goal.confidence < 0.5) {
+    issue(['goal', 'confidence'], 'must be at least 0.5 with the method "unified"');
+  }
+  if (payload !== undefined && goal === undefined) issue(['payload'], 'needs a goal, whose exposure it dates');
 }
 
-const DEFAULT_IONIZATION: IonizationIn = Ionization.parse({});
+function checkBackgrounds(
+  backgrounds: readonly Partial<BackgroundIn>[],
+  goal: Partial<GoalIn> | undefined,
+  last: unknown,
+  issue: (path: (string | number)[], message: string) => void,
+): void {
+  const names = new Map<unknown, number>();
+  backgrounds.forEach((background, j) => {
+    if (typeof background !== 'object' || background === null) return;
+    const first = names.get(background.name);
+    if (first !== undefined && typeof background.name === 'string')
+      issue(['backgrounds', j, 'name'], `is the name of background ${first} already`);
+    else names.set(background.name, j);
+    if (goal?.kind === 'exclusion' && goal.method !== 'likelihood' && Number(background.relativeUncertainty) > 0) {
+      issue(
+        ['backgrounds', j, 'relativeUncertainty'],
+        `must be 0 with the method "${goal.method}"; the method "likelihood" takes uncertain backgrounds`,
+      );
+    }
+    if (background.kind !== 'perBin' || !Array.isArray(background.rates)) return;
+    const bins = new Set<number>();
+    background.rates.forEach(({ electrons }, i) => {
+      if (typeof last === 'number' && electrons > last) {
+        issue(['backgrounds', j, 'rates', i, 'electrons'], `is beyond the last bin, maxElectrons = ${last}`);
+      }
+      if (bins.has(electrons)) issue(['backgrounds', j, 'rates', i, 'electrons'], `names bin ${electrons} again`);
+      bins.add(electrons);
+    });
+  });
+}
 
 export const Scenario = z
   .strictObject({
@@ -191,16 +163,28 @@ export const Scenario = z
     halo: Halo.optional(),
     crystal: Crystal,
     ionization: Ionization.optional(),
+    readout: Readout.optional(),
+    backgrounds: Backgrounds.optional().meta({ description: 'Everything but the signal that is counted, at most 50.' }),
     goal: Goal.optional(),
+    payload: Payload.optional(),
     spectrum: z.boolean().default(false).meta({ description: 'Adds dR/dE on the table’s energy axis.' }),
   })
   .superRefine(checkScenario, { when: () => true })
   .meta({ id: 'Scenario', description: 'A scenario. Without a goal the answer has rates only.' })
   .transform(
     (scenario): ScenarioIn => ({
-      ...scenario,
+      darkMatter: scenario.darkMatter,
       halo: scenario.halo ?? DEFAULT_HALO,
+      crystal: scenario.crystal,
       ionization: scenario.ionization ?? DEFAULT_IONIZATION,
-      goal: scenario.goal,
+      readout: scenario.readout,
+      backgrounds: scenario.backgrounds ?? [],
+      // the default window is part of the canonical request
+      goal: scenario.goal && {
+        ...scenario.goal,
+        window: scenario.goal.window ?? { from: 1, to: (scenario.ionization ?? DEFAULT_IONIZATION).maxElectrons },
+      },
+      payload: scenario.payload,
+      spectrum: scenario.spectrum,
     }),
   );

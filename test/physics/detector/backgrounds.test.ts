@@ -2,9 +2,9 @@ import { describe, expect, it } from 'vitest';
 import { darkCurrentBackground, flatBackground, perBinBackground } from '../../../physics/detector/backgrounds.ts';
 import { readoutResponse } from '../../../physics/detector/readout.ts';
 import type { DomainError } from '../../../physics/errors.ts';
-import { stepWithReach } from '../../../physics/ionization/charge-reach.ts';
+import { stepIonization } from '../../../physics/ionization/step.ts';
 import { fanoIonization } from '../../../physics/ionization/fano.ts';
-import { normalBetween } from '../../../physics/ionization/gaussian-cells.ts';
+import { normalBetween } from '../../../physics/numeric/gaussian-cells.ts';
 
 const QUIET = readoutResponse({ noiseElectrons: 0, efficiency: 1, maxElectrons: 5 });
 const NOISY = readoutResponse({ noiseElectrons: 0.3, efficiency: 1, maxElectrons: 5 });
@@ -45,13 +45,13 @@ describe('perBinBackground', () => {
 
 describe('flatBackground', () => {
   it('in a perfect detector is the rate in one energy per pair, and nothing in bin 0', () => {
-    const bins = flatBackground(1000, stepWithReach(1.12, 3.8), QUIET);
+    const bins = flatBackground(1000, stepIonization(1.12, 3.8), QUIET);
     expect(bins[0]).toBe(0);
     for (let n = 1; n <= 5; n++) expect(bins[n]).toBeCloseTo(3.8, 12);
   });
 
   it('noise moves it across the last bin both ways: the far bins stay flat, also the last', () => {
-    const bins = flatBackground(1000, stepWithReach(1.12, 3.8), NOISY);
+    const bins = flatBackground(1000, stepIonization(1.12, 3.8), NOISY);
     const up = normalBetween(0.5 / 0.3, 1.5 / 0.3);
     expect(bins[5]).toBeCloseTo(3.8, 7); // to 1e-9 of the rate per electron, and the truncated neighbours
     expect(bins[0]).toBeCloseTo(3.8 * (normalBetween(-Infinity, -0.5 / 0.3) + normalBetween(-Infinity, -1.5 / 0.3)), 7);
@@ -59,7 +59,7 @@ describe('flatBackground', () => {
   });
 
   it('noise, Fano factor → 0 give the step model without noise', () => {
-    const perfect = flatBackground(1000, stepWithReach(1.12, 3.8), QUIET);
+    const perfect = flatBackground(1000, stepIonization(1.12, 3.8), QUIET);
     const nearly = readoutResponse({ noiseElectrons: 0.01, efficiency: 1, maxElectrons: 5 });
     expect(flatBackground(1000, fanoIonization(1.12, 3.8, 0), nearly)).toEqual(perfect);
   });

@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import { flatSpectrumRates } from '../../../physics/detector/flat-spectrum.ts';
 import { DomainError } from '../../../physics/errors.ts';
-import { stepWithReach } from '../../../physics/ionization/charge-reach.ts';
+import { stepIonization } from '../../../physics/ionization/step.ts';
 import { fanoIonization } from '../../../physics/ionization/fano.ts';
 import { tableIonization } from '../../../physics/ionization/table.ts';
 
@@ -25,7 +25,7 @@ function denseRates(gap: number, pair: number, fano: number, count: number): Flo
 
 describe('flatSpectrumRates', () => {
   it('step model: every bin gets the rate in one energy per pair', () => {
-    const rates = flatSpectrumRates(1000, stepWithReach(1.12, 3.8), 15);
+    const rates = flatSpectrumRates(1000, stepIonization(1.12, 3.8), 15);
     expect(rates[0]).toBe(0);
     for (let n = 1; n <= 15; n++) expect(rates[n]).toBeCloseTo(3.8, 12);
     expect(flatSpectrumRates(1000, fanoIonization(1.12, 3.8, 0), 15)).toEqual(rates);
@@ -71,11 +71,11 @@ describe('flatSpectrumRates', () => {
   });
 
   it('divides by the widest segment a model allows', () => {
-    const halves = { ...stepWithReach(1, 2), maxSegmentEv: 0.3 };
+    const halves = { ...stepIonization(1, 2), maxSegmentEv: 0.3 };
     for (const rate of flatSpectrumRates(1000, halves, 3).subarray(1)) expect(rate).toBeCloseTo(2, 12);
   });
 
   it('refuses a negative rate', () => {
-    expect(() => flatSpectrumRates(-1, stepWithReach(1, 2), 3)).toThrow(DomainError);
+    expect(() => flatSpectrumRates(-1, stepIonization(1, 2), 3)).toThrow(DomainError);
   });
 });

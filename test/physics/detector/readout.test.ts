@@ -3,7 +3,7 @@ import { describe, expect, it } from 'vitest';
 import { responseMatrix, truncationElectron } from '../../../physics/detector/noise-response.ts';
 import { readoutResponse } from '../../../physics/detector/readout.ts';
 import { DomainError } from '../../../physics/errors.ts';
-import { normalBetween } from '../../../physics/ionization/gaussian-cells.ts';
+import { normalBetween } from '../../../physics/numeric/gaussian-cells.ts';
 
 const sum = (values: ArrayLike<number>): number => Array.from(values).reduce((a, b) => a + b, 0);
 const noise = fc.double({ min: 0, max: 20, noNaN: true });

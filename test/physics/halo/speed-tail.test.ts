@@ -1,4 +1,5 @@
 import { describe, expect, it } from 'vitest';
+import { componentsHalo } from '../../../physics/halo/components.ts';
 import { meanSpeedKmPerS } from '../../../physics/halo/mean-speed.ts';
 import { secondTailAt, speedTail, tailAt } from '../../../physics/halo/speed-tail.ts';
 import { type Cutoff, standardHalo } from '../../../physics/halo/standard-halo.ts';
@@ -67,6 +68,47 @@ describe('speedTail: H(v) = ∫_v^∞ η dv′', () => {
         }
       }
     }
+  });
+});
+
+describe('speedTail of an η that jumps or falls steeply', () => {
+  const laboratory = [11.1, 250.2, 7.3] as const;
+  const stream = (dispersionKmPerS: number, v: number, weight = 1) => ({
+    weight,
+    dispersionKmPerS,
+    meanVelocityKmPerS: [0, v, 0] as const,
+    escapeSpeedKmPerS: 544,
+  });
+  const isotropic = { ...stream(168, 0), meanVelocityKmPerS: [0, 0, 0] as const };
+
+  it('is the ramp 1 − v/v_s for one cold stream, and its half square, exactly', () => {
+    const halo = componentsHalo([stream(0, -300)], laboratory);
+    const vs = halo.largestSpeedKmPerS;
+    for (const from of [0, 400]) {
+      const tail = speedTail(halo, from);
+      for (const v of [from, 430.1, 500, 0.9999 * vs]) {
+        expect(tailAt(tail, v) / (1 - v / vs)).toBeCloseTo(1, 11);
+        expect(secondTailAt(tail, v) / ((vs - v) ** 2 / (2 * vs))).toBeCloseTo(1, 9);
+      }
+    }
+  });
+
+  it('is the weighted sum of those of its parts: corners where two streams end, sections for a narrow one', () => {
+    const parts = [isotropic, stream(0, -100, 0.2), stream(0, -200, 0.3), stream(1, -250, 0.1)];
+    const total = 1.6;
+    const whole = speedTail(componentsHalo(parts, laboratory), 0);
+    const own = parts.map((part) => ({
+      weight: part.weight / total,
+      tail: speedTail(componentsHalo([part], laboratory), 0),
+    }));
+    let compared = 0;
+    for (let v = 0; v < 780; v += 1.37) {
+      const expected = own.reduce((sum, { weight, tail }) => sum + weight * tailAt(tail, v), 0);
+      expect(Math.abs(tailAt(whole, v) / expected - 1), `${v}`).toBeLessThan(1e-7);
+      compared++;
+    }
+    expect(compared).toBeGreaterThan(500);
+    expect(tailAt(whole, 0)).toBeCloseTo(1, 9);
   });
 });
 

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { gaussianCells, normalBetween } from '../../../physics/ionization/gaussian-cells.ts';
+import { gaussianCells, normalBetween } from '../../../physics/numeric/gaussian-cells.ts';
 
 describe('gaussianCells', () => {
   // mean, deviation, n, ∫ of the normal density over the cell: 40 digits (quadrature; the last from tails) with a general-purpose
