@@ -53,10 +53,12 @@ function launch(environment: Record<string, string>) {
 export async function runToEnd(
   environment: Record<string, string>,
 ): Promise<Exit & { stdout: string; stderr: string }> {
-  const { child, text, exited } = launch({ DATA_DIR: temporaryFolder(), ...environment });
+  const dataDir = temporaryFolder();
+  const { child, text, exited } = launch({ DATA_DIR: dataDir, ...environment });
   const timer = setTimeout(() => child.kill('SIGKILL'), START_MS);
   const exit = await exited;
   clearTimeout(timer);
+  fs.rmSync(dataDir, { recursive: true, force: true });
   return { ...exit, ...text };
 }
 
