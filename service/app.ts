@@ -101,14 +101,15 @@ async function readBody(
       const told = error.faults.some((fault) => fault.pointer === pointer);
       if (!told && !(await options.crystals.find(id))) unknown.push(unknownCrystal(pointer, id));
     }
-    throw unknown.length > 0 ? invalidInput([...error.faults, ...unknown]) : error;
+    // first, so that the cut of a long list does not take them away
+    throw unknown.length > 0 ? invalidInput([...unknown, ...error.faults], error.faultCount + unknown.length) : error;
   }
 }
 
 /** What the caller may know of an error. The unknown says nothing to the caller and everything to the log. */
 function problemOf(error: Error, c: Context, { log, deadlineSeconds }: AppOptions): Problem {
   if (error instanceof Problem) return error;
-  if (error instanceof DomainError) return invalidInput([faultOf(error)]);
+  if (error instanceof DomainError && isOfInput(error)) return invalidInput([faultOf(error)]);
   if (error.name === 'TimeoutError')
     return new Problem('busy', `The computation took longer than ${deadlineSeconds} s.`, [], { 'Retry-After': '5' });
   if (c.req.raw.signal.aborted) return new Problem('busy', 'The connection was closed.');
@@ -137,6 +138,11 @@ const POINTERS: Readonly<Record<string, string>> = {
   bandGap: '/ionization/bandGap',
   energyPerPair: '/ionization/energyPerPair',
 };
+
+/** Whether an error of the calculation is about something the caller wrote; else it is ours, and goes to the log. */
+function isOfInput(error: DomainError): boolean {
+  return error.parameter.join('/') in POINTERS || ['backgrounds', 'crystal'].includes(String(error.parameter[0]));
+}
 
 function faultOf(error: DomainError): Fault {
   return {

@@ -24,7 +24,8 @@ function stop({ service, server }: NonNullable<typeof running>): void {
   server.close(() => {
     void service.close().then(() => process.exit(0));
   });
-  server.closeIdleConnections();
+  // one that was busy when the signal came is idle as soon as it is answered
+  setInterval(() => server.closeIdleConnections(), 50).unref();
 }
 
 for (const signal of ['SIGTERM', 'SIGINT'] as const) process.on(signal, drain);

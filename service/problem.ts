@@ -41,22 +41,25 @@ export class Problem extends Error {
   readonly headers: Readonly<Record<string, string>>;
   /** The tables that a faulty body names: whether they exist is told along with the other faults. */
   namedCrystals: readonly NamedCrystal[] = [];
+  /** How many faults there were, listed or not. */
+  faultCount: number;
 
   constructor(type: ProblemType, detail: string, faults: readonly Fault[] = [], headers: Record<string, string> = {}) {
     super(detail);
     this.name = 'Problem';
     this.type = type;
     this.faults = faults;
+    this.faultCount = faults.length;
     this.headers = headers;
   }
 }
 
-/** Bad input, every fault at once. */
-export function invalidInput(faults: readonly Fault[]): Problem {
+/** Bad input, every fault at once; `count` where there were more than are passed. */
+export function invalidInput(faults: readonly Fault[], count = faults.length): Problem {
   const shown = faults.slice(0, MOST_FAULTS);
-  const count = faults.length === 1 ? '1 fault' : `${faults.length} faults`;
-  const cut = faults.length > shown.length ? `, the first ${shown.length} listed` : '';
-  return new Problem('invalid-input', `The request has ${count}${cut}.`, shown);
+  const words = count === 1 ? '1 fault' : `${count} faults`;
+  const cut = count > shown.length ? `, the first ${shown.length} listed` : '';
+  return Object.assign(new Problem('invalid-input', `The request has ${words}${cut}.`, shown), { faultCount: count });
 }
 
 /** RFC 6901 pointer of a path of keys. */

@@ -10,6 +10,7 @@ export type Failure =
       readonly detail: string;
       readonly faults: readonly Fault[];
       readonly namedCrystals: readonly NamedCrystal[];
+      readonly faultCount: number;
     }
   | {
       readonly kind: 'domain';
@@ -27,8 +28,8 @@ export type Failure =
 
 export function failureOf(error: unknown): Failure {
   if (error instanceof Problem) {
-    const { type, message: detail, faults, namedCrystals } = error;
-    return { kind: 'problem', type, detail, faults, namedCrystals };
+    const { type, message: detail, faults, namedCrystals, faultCount } = error;
+    return { kind: 'problem', type, detail, faults, namedCrystals, faultCount };
   }
   if (error instanceof DomainError)
     return { kind: 'domain', parameter: error.parameter, value: String(error.value), allowed: error.allowed };
@@ -42,6 +43,7 @@ export function errorOf(failure: Failure): Error {
     case 'problem':
       return Object.assign(new Problem(failure.type, failure.detail, failure.faults), {
         namedCrystals: failure.namedCrystals,
+        faultCount: failure.faultCount,
       });
     case 'domain':
       return new DomainError(failure.parameter, failure.value, failure.allowed);

@@ -29,7 +29,7 @@ import { type AxisRange, logTicks } from './log-axis.ts';
 import { wrapped } from './text-width.ts';
 import { element, lines, type Markup, textAt } from './xml.ts';
 
-export type { FigureBand, FigureCurve, ReachFigure } from './figure-input.ts';
+export type { FigureCurve, ReachFigure } from './figure-input.ts';
 
 export const PLANNING_ESTIMATE =
   'A planning estimate. The collaboration’s own analysis of its detector takes precedence.';

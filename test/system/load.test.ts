@@ -4,7 +4,7 @@ import { gzipSync } from 'node:zlib';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import { inventedScenario, inventedTable, largeTable } from '../support/invented.ts';
 import { problemOf } from '../support/problem-of.ts';
-import { type RunningService, startRunningService } from '../support/running-service.ts';
+import { type RunningService, startRunningService, temporaryFolder } from '../support/running-service.ts';
 
 /** A rate that takes a good part of a second: many cells, and a halo nobody asked for before. */
 let halos = 0;
@@ -87,12 +87,13 @@ describe('load', () => {
 
 describe('deadline', () => {
   test('POST /v1/rates: past DEADLINE_S it is 503 with Retry-After, and the worker is free again', async () => {
-    const service = await startRunningService({ WORKERS: '1', DEADLINE_S: '0.05' });
-    const id = await stored(service, inventedTable());
-    const { crystal } = inventedScenario({ crystal: largeTable(900, 500) });
-    const answers = await Promise.all(
-      Array.from({ length: 8 }, () => service.post('/v1/rates', inventedScenario({ crystal }))),
-    );
+    const dataDir = temporaryFolder();
+    const patient = await startRunningService({ WORKERS: '1', DATA_DIR: dataDir });
+    const large = await stored(patient, largeTable(2400, 1200));
+    const id = await stored(patient, inventedTable());
+    await patient.stop();
+    const service = await startRunningService({ WORKERS: '1', DATA_DIR: dataDir, DEADLINE_S: '1' });
+    const answers = await Promise.all(Array.from({ length: 60 }, () => service.post('/v1/rates', heavy(large))));
     const late = answers.filter(({ status }) => status === 503);
     expect(late.length).toBeGreaterThan(0);
     for (const response of late) {
@@ -105,6 +106,7 @@ describe('deadline', () => {
       })
       .toBe(200);
     await service.stop();
+    fs.rmSync(dataDir, { recursive: true, force: true });
   });
 
   test('POST /v1/rates: a full queue is 503 with Retry-After at once, the rest is served', async () => {
