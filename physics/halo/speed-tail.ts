@@ -1,14 +1,15 @@
 /**
- * The tail of the mean inverse speed, H(v) = ∫_v^∞ η(v′) dv′ (dimensionless, H(0) = 1), and its own tail H₂(v) = ∫_v^∞ H dv′
- * (km/s), tabulated for evaluation millions of times.
+ * The tail of the mean inverse speed, H(v) = ∫_v^∞ η(v′) dv′ (dimensionless, H(0) = 1), and its own tail H₂(v) = ∫_v^∞ H
+ * dv′ (km/s), tabulated for evaluation millions of times.
  *
- * At fixed momentum transfer q the energy integral of the rate over [E₁, E₂] is q [H(v₁) − H(v₂)], v = (E + δ)/q + q/2m_χ: no
- * quadrature in energy, no kinks to hunt, no digits lost at the kinematic edge. H₂ does the same for an integrand linear in E.
+ * At fixed momentum transfer q the energy integral of the rate over [E₁, E₂] is q [H(v₁) − H(v₂)], v = (E + δ)/q +
+ * q/2m_χ: no quadrature in energy, no kinks to hunt, no digits lost at the kinematic edge. H₂ does the same for an
+ * integrand linear in E.
  *
- * H is a piecewise cubic that matches H and its slope −η at both ends of each cell, H₂ its exact integral. H vanishes like
- * (v_max − v)³ at the edge (like its square where the laboratory is at rest), which a cubic reproduces: the relative accuracy
- * holds right up to v_max. Where η jumps, H has a corner: there one section of the table ends and the next begins, as it does at the
- * ends of a stretch over which η falls steeply.
+ * H is a piecewise cubic that matches H and its slope −η at both ends of each cell, H₂ its exact integral. H vanishes
+ * like (v_max − v)³ at the edge (like its square where the laboratory is at rest), which a cubic reproduces: the relative
+ * accuracy holds right up to v_max. Where η jumps, H has a corner: there one section of the table ends and the next
+ * begins, as it does at the ends of a stretch over which η falls steeply.
  */
 import type { VelocityDistribution } from './velocity-distribution.ts';
 
@@ -21,11 +22,16 @@ export interface SpeedTail {
   readonly coefficients: Float64Array;
   /** H₂ at the lower end of each cell, km/s. */
   readonly secondTail: Float64Array;
-  /** The table, finer or of the next section, that goes on where this one ends; without one, this ends at the largest speed. */
+  /**
+   * The table, finer or of the next section, that goes on where this one ends; without one, this ends at the largest speed.
+   */
   readonly top: SpeedTail | undefined;
 }
 
-/** Cells of the whole table, the fewest of a section of it, and of each finer one for its last speeds: near v_max relative accuracy needs ever finer cells. */
+/**
+ * Cells of the whole table, the fewest of a section of it, and of each finer one for its last speeds: near v_max relative
+ * accuracy needs ever finer cells.
+ */
 const CELLS = 1024;
 const SECTION_CELLS = 256;
 const TOP_CELLS = 256;
@@ -69,7 +75,8 @@ function belowJump(halo: VelocityDistribution, vKmPerS: number): number {
 }
 
 /**
- * Tabulates H and H₂ from `fromKmPerS` (≥ 0, below the largest speed) to the largest speed. Cost: two evaluations of η a cell.
+ * Tabulates H and H₂ from `fromKmPerS` (≥ 0, below the largest speed) to the largest speed. Cost: two evaluations of η a
+ * cell.
  *
  * Accuracy: differences H(v₁) − H(v₂) to 1e-7 relative, typically 1e-9 (test/physics/halo/speed-tail.test.ts).
  */

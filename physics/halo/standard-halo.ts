@@ -52,15 +52,28 @@ function expm1MinusArgument(u: number): number {
   return sum;
 }
 
+/** The cutoff with what every evaluation needs of it: z and e^{−z²}, erf z, erfc z. */
+interface Edge {
+  readonly z: number;
+  readonly cutoff: Cutoff;
+  readonly gauss: number;
+  readonly erf: number;
+  readonly erfc: number;
+}
+
+function edgeAt(z: number, cutoff: Cutoff): Edge {
+  return { z, cutoff, gauss: Math.exp(-z * z), erf: erf(z), erfc: erfc(z) };
+}
+
 /** g at distance `below` under the cutoff: s = ±(z − below). Exact to rounding relative to its own size. */
-function transverseDensity(below: number, z: number, cutoff: Cutoff): number {
+function transverseDensity(below: number, { z, cutoff, gauss }: Edge): number {
   const u = below * (2 * z - below); // z² − s²
   if (!(u > 0)) return 0;
   if (u > 1) {
     const s = z - below;
-    return Math.exp(-s * s) - Math.exp(-z * z) * (cutoff === 'smooth' ? 1 + u : 1);
+    return Math.exp(-s * s) - gauss * (cutoff === 'smooth' ? 1 + u : 1);
   }
-  return Math.exp(-z * z) * (cutoff === 'smooth' ? expm1MinusArgument(u) : Math.expm1(u));
+  return gauss * (cutoff === 'smooth' ? expm1MinusArgument(u) : Math.expm1(u));
 }
 
 /** erf(b) − erf(a) for a ≤ b, keeping the digits of both tails. */
@@ -70,22 +83,27 @@ function erfDifference(a: number, b: number): number {
   return erf(b) - erf(a);
 }
 
+/** erf(z) − erf(a) for a ≤ z, as erfDifference. */
+function erfDifferenceToEdge(a: number, edge: Edge): number {
+  return a > 0.5 ? erfc(a) - edge.erfc : edge.erf - erf(a);
+}
+
 /** ∫ g ds over [z − below − length, z − below]; `below` ≥ 0 is how far the upper end lies under the cutoff. */
-function densityIntegral(below: number, length: number, z: number, cutoff: Cutoff): number {
+function densityIntegral(below: number, length: number, edge: Edge): number {
   if (!(length > 0)) return 0;
   if (length <= SHORT_INTERVAL) {
     let sum = 0;
     for (let i = 0; i < RULE.nodes.length; i++) {
-      sum += RULE.weights[i] * transverseDensity(below + (length / 2) * (1 + RULE.nodes[i]), z, cutoff);
+      sum += RULE.weights[i] * transverseDensity(below + (length / 2) * (1 + RULE.nodes[i]), edge);
     }
     return (sum * length) / 2;
   }
+  const { z, cutoff, gauss } = edge;
   const b = z - below;
   const a = b - length;
-  const base = (SQRT_PI / 2) * erfDifference(a, b);
-  const edge = Math.exp(-z * z);
-  if (edge === 0) return base;
-  return base - edge * (cutoff === 'smooth' ? (1 + z * z) * length - (b ** 3 - a ** 3) / 3 : length);
+  const base = (SQRT_PI / 2) * (below === 0 ? erfDifferenceToEdge(a, edge) : erfDifference(a, b));
+  if (gauss === 0) return base;
+  return base - gauss * (cutoff === 'smooth' ? (1 + z * z) * length - (b ** 3 - a ** 3) / 3 : length);
 }
 
 /**
@@ -112,15 +130,16 @@ export function standardHalo(parameters: StandardHaloParameters): VelocityDistri
   const y = vE / v0;
   const z = vEsc / v0;
   const vMax = vEsc + vE;
-  const rootPiN = z < SHORT_INTERVAL / 2 ? densityIntegral(0, 2 * z, z, cutoff) : 2 * densityIntegral(0, z, z, cutoff);
+  const edge = edgeAt(z, cutoff);
+  const rootPiN = z < SHORT_INTERVAL / 2 ? densityIntegral(0, 2 * z, edge) : 2 * densityIntegral(0, z, edge);
   const scale = 1 / (v0 * rootPiN);
   /** ∫ g over the window [x − y, x + y], divided by y; 2 g(x) in the limit y → 0. */
   const windowMean = (vMin: number): number => {
     const lowerEndBelow = (vEsc - vMin + vE) / v0; // z − (x − y), in the order that keeps a small v_E
-    if (y < WINDOW_IS_A_POINT) return 2 * transverseDensity(lowerEndBelow, z, cutoff);
+    if (y < WINDOW_IS_A_POINT) return 2 * transverseDensity(lowerEndBelow, edge);
     const upperEndBelow = Math.max(0, lowerEndBelow - 2 * y);
     const length = Math.min(2 * y, lowerEndBelow, 2 * z);
-    return densityIntegral(upperEndBelow, length, z, cutoff) / y;
+    return densityIntegral(upperEndBelow, length, edge) / y;
   };
   return {
     largestSpeedKmPerS: vMax,

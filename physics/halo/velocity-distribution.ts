@@ -8,8 +8,9 @@ export interface VelocityDistribution {
   /** Speeds, km/s, ascending, between 0 and the largest speed, where η or one of its first derivatives jumps. */
   readonly kinksKmPerS: readonly number[];
   /**
-   * Those speeds, ascending, at which a table of η must begin anew: where η itself jumps (a cold stream), and the two ends of a
-   * stretch over which it falls within a small share of the largest speed. Absent: none. At a jump η is the value above it.
+   * Those speeds, ascending, at which a table of η must begin anew: where η itself jumps (a cold stream), and the two
+   * ends of a stretch over which it falls within a small share of the largest speed. Absent: none. At a jump η is the
+   * value above it.
    */
   readonly sectionEndsKmPerS?: readonly number[];
   /** η(v_min) in s/km for v_min ≥ 0 in km/s. */
