@@ -24,6 +24,7 @@ Unknown fields are refused. Request bodies may be compressed with gzip.`;
 
 const TAGS = {
   rates: 'Rates and exposure',
+  reach: 'Reach curves and comparisons',
   crystals: 'Crystal form factor tables',
   'charge tables': 'Ionization models given as tables',
   halo: 'The dark-matter halo',
@@ -96,7 +97,9 @@ function refer(value: unknown): unknown {
 
 function responsesOf(route: RouteDefinition, components: Map<string, JsonSchema>): Record<string, ResponseObject> {
   const responses: Record<string, ResponseObject> = {};
-  for (const [status, { description, schema, mediaType, headers }] of Object.entries(route.responses)) {
+  for (const [status, { description, schema, mediaType, otherMediaTypes = [], headers }] of Object.entries(
+    route.responses,
+  )) {
     const media: MediaTypeObject = schema ? { schema: jsonSchema(schema, 'output', components) } : {};
     responses[status] = {
       description,
@@ -107,7 +110,14 @@ function responsesOf(route: RouteDefinition, components: Map<string, JsonSchema>
             ),
           }
         : {}),
-      ...(schema ? { content: { [mediaType ?? 'application/json']: media } } : {}),
+      ...(schema
+        ? {
+            content: {
+              [mediaType ?? 'application/json']: media,
+              ...Object.fromEntries(otherMediaTypes.map((type) => [type, { schema: { type: 'string' as const } }])),
+            },
+          }
+        : {}),
     };
   }
   for (const type of [...route.problems, 'internal' as const]) {
@@ -127,6 +137,7 @@ function operationOf(route: RouteDefinition, components: Map<string, JsonSchema>
     required: true,
     description,
     schema: { type: 'string' },
+    ...(route.parameterExamples?.[name] === undefined ? {} : { example: route.parameterExamples[name] }),
   }));
   return {
     operationId: route.operationId,

@@ -5,6 +5,7 @@ import { HTTPException } from 'hono/http-exception';
 import { methodNotAllowed } from 'hono/method-not-allowed';
 import { requestId } from 'hono/request-id';
 import { DomainError } from '../physics/errors.ts';
+import { type CrystalUploads, crystalUploads, isMultipart } from './crystals/upload/crystal-uploads.ts';
 import { type DocsPage, docsRoutes } from './docs-page.ts';
 import type { Log } from './log.ts';
 import { type Fault, invalidInput, Problem, pointerOf, problemResponse } from './problem.ts';
@@ -41,6 +42,7 @@ const STORAGE_CODES = new Set([
 export function createApp(options: AppOptions): Hono {
   const app = new Hono();
   const bodies = bodyReader(options.compute);
+  const uploads = crystalUploads(options.uploadFolder, options.compute);
   app.use(requestId());
   app.use(async (c, next) => {
     await next();
@@ -65,7 +67,7 @@ export function createApp(options: AppOptions): Hono {
       },
     }),
   );
-  for (const route of ROUTES) register(app, route, options, bodies);
+  for (const route of ROUTES) register(app, route, options, bodies, uploads);
   docsRoutes(app, options.docs, options.document);
   app.notFound(() =>
     problemResponse(new Problem('not-found', 'There is nothing at this path; GET /docs describes the service.')),
@@ -74,11 +76,23 @@ export function createApp(options: AppOptions): Hono {
   return app;
 }
 
-function register(app: Hono, route: RouteDefinition, options: AppOptions, bodies: BodyReader): void {
+function register(
+  app: Hono,
+  route: RouteDefinition,
+  options: AppOptions,
+  bodies: BodyReader,
+  uploads: CrystalUploads,
+): void {
   app.on(route.method.toUpperCase(), route.path.replaceAll(/\{(\w+)\}/g, ':$1'), async (c) => {
     if (route.body && !options.isReady())
       throw new Problem('busy', 'The service is shutting down and takes no new work.', [], { 'Retry-After': '1' });
-    const signal = AbortSignal.any([c.req.raw.signal, AbortSignal.timeout(options.deadlineSeconds * 1e3)]);
+    const signalOf = (): AbortSignal =>
+      AbortSignal.any([c.req.raw.signal, AbortSignal.timeout(options.deadlineSeconds * 1e3)]);
+    if (route.multipart && isMultipart(c)) {
+      const body = await uploads.read(c, signalOf);
+      return route.handle({ c, dependencies: options, body: body as never, signal: signalOf() });
+    }
+    const signal = signalOf();
     const body = route.body && (await readBody(c, route, options, bodies, signal));
     return route.handle({ c, dependencies: options, body: body as never, signal });
   });
@@ -93,7 +107,7 @@ async function readBody(
   signal: AbortSignal,
 ): Promise<unknown> {
   try {
-    return await bodies.read(c, route.body!, signal);
+    return await bodies.read(c, route.body!, signal, route.multipart ? ['multipart/form-data'] : []);
   } catch (error) {
     if (!(error instanceof Problem)) throw error;
     const unknown: Fault[] = [];

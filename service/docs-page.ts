@@ -32,6 +32,9 @@ const START = `window.SwaggerUIBundle({
 });
 `;
 
+/** There is one server and nobody signs in: no bar for either. */
+const OWN_STYLE = '\n.swagger-ui .scheme-container { display: none }\n';
+
 const POLICY =
   "default-src 'none'; script-src 'self'; style-src 'self' 'unsafe-inline'; img-src 'self' data:; connect-src 'self'; base-uri 'none'; form-action 'none'; frame-ancestors 'none'";
 
@@ -45,5 +48,5 @@ export function docsRoutes(app: Hono, docs: DocsPage, document: string): void {
   serve('/docs', 'text/html; charset=utf-8', PAGE);
   serve('/docs/start.js', 'text/javascript; charset=utf-8', START);
   serve('/docs/script.js', 'text/javascript; charset=utf-8', docs.script);
-  serve('/docs/style.css', 'text/css; charset=utf-8', docs.style);
+  serve('/docs/style.css', 'text/css; charset=utf-8', docs.style + OWN_STYLE);
 }

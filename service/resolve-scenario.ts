@@ -1,7 +1,7 @@
 /** From a validated scenario to one that can be computed: its tables found, the gap and pair energy settled, or every fault told. */
 import type { CrystalTable } from '../physics/crystal/crystal-table.ts';
 import { tableFaults } from '../physics/ionization/table.ts';
-import type { ResolvedScenario } from './compute/resolved-scenario.ts';
+import type { ResolvedCrystal, ResolvedScenario } from './compute/resolved-scenario.ts';
 import { tableOf } from './crystals/crystal-record.ts';
 import { type Fault, invalidInput, pointerOf } from './problem.ts';
 import type { Dependencies } from './route.ts';
@@ -23,10 +23,15 @@ export function unknownCrystal(pointer: string, id: string): Fault {
 }
 
 /** The table a scenario names or brings; undefined with a fault where the name is unknown. */
-async function findCrystal(crystal: CrystalIn, tables: Tables, faults: Fault[]): Promise<FoundCrystal | undefined> {
+async function findCrystal(
+  crystal: CrystalIn,
+  tables: Tables,
+  faults: Fault[],
+  at: string,
+): Promise<FoundCrystal | undefined> {
   if ('header' in crystal) return { ...crystal, inline: true };
   const record = await tables.crystals.find(crystal.id);
-  if (!record) faults.push(unknownCrystal('/crystal/id', crystal.id));
+  if (!record) faults.push(unknownCrystal(`${at}/id`, crystal.id));
   return record && { ...record, inline: false };
 }
 
@@ -42,18 +47,57 @@ async function findChargeTable(input: ScenarioIn, tables: Tables, faults: Fault[
   return record && { energiesEv: record.header.energiesEv, probabilities: record.header.probabilities };
 }
 
+/** Settles the screening: never another table than the one named, and a screened twin only where it is asked for. */
+async function screenedAs(
+  { screening }: ScenarioIn,
+  { id, header, inline }: FoundCrystal,
+  tables: Tables,
+  faults: Fault[],
+  crystalAt: string,
+): Promise<ResolvedCrystal> {
+  const { electronsPerCell } = header;
+  if (header.screened) {
+    if (screening === 'none') faults.push({ pointer: '/screening', detail: await whyScreened(id, header, tables) });
+    return { id, screened: true, twin: 'none', electronsPerCell };
+  }
+  const hasVolume = header.cellVolumeAngstrom3 !== undefined;
+  if (screening !== 'in-medium') return { id, screened: false, twin: hasVolume ? 'offered' : 'none', electronsPerCell };
+  if (!hasVolume) {
+    const detail =
+      'the table is unscreened and gives no cell volume, without which its dielectric function, and so its screening, cannot be computed';
+    faults.push({ pointer: inline ? `${crystalAt}/cellVolume` : '/screening', detail });
+  }
+  return { id, screened: true, twin: 'used', electronsPerCell };
+}
+
+/** Why screening cannot be taken out, and the built-in table to name instead if there is one. */
+async function whyScreened(id: string, { quantity }: CrystalHeader, { crystals }: Tables): Promise<string> {
+  const why =
+    quantity === 'lossFunction'
+      ? 'the table holds a loss function, which is screened by nature'
+      : 'the numbers of the table include in-medium screening, which cannot be taken out of them';
+  const names = (await crystals.describe(id))?.aliases.map((alias) => `${alias}-unscreened`) ?? [];
+  const known = names.find((name) => crystals.isAlias(name));
+  return known === undefined ? `${why}; name an unscreened table` : `${why}; the table "${known}" has none`;
+}
+
 export interface ScenarioToCompute {
   readonly scenario: ResolvedScenario;
   readonly table: CrystalTable;
 }
 
-/** `at` is where in the body the scenario stands, a pointer; faults are told from there. */
-export async function resolveScenario(input: ScenarioIn, tables: Tables, at = ''): Promise<ScenarioToCompute> {
+/** `at` is where in the body the scenario stands, a pointer, and `crystalAt` its table in it; faults are told from there. */
+export async function resolveScenario(
+  input: ScenarioIn,
+  tables: Tables,
+  at = '',
+  crystalAt = '/crystal',
+): Promise<ScenarioToCompute> {
   const faults: Fault[] = [];
   const refuse = (): never => {
     throw invalidInput(faults.map((fault) => ({ ...fault, pointer: at + (fault.pointer ?? '') })));
   };
-  const crystal = await findCrystal(input.crystal, tables, faults);
+  const crystal = await findCrystal(input.crystal, tables, faults, crystalAt);
   const chargeTable = await findChargeTable(input, tables, faults);
   if (!crystal) return refuse();
   const { header } = crystal;
@@ -75,18 +119,19 @@ export async function resolveScenario(input: ScenarioIn, tables: Tables, at = ''
   } else if (header.momentumKev[0] === 0 && !(Math.max(bandGapEv, header.energyEv[0]) + splitting > 0)) {
     const detail =
       'the momentum axis begins at 0, where energy plus mass splitting can vanish: give a band gap, or a table that begins above 0';
-    faults.push({ pointer: crystal.inline ? '/crystal/momentum' : '/crystal/id', detail });
+    faults.push({ pointer: crystal.inline ? `${crystalAt}/momentum` : `${crystalAt}/id`, detail });
   }
   if (chargeTable) {
     for (const { path, detail } of tableFaults({ ...chargeTable, bandGapEv })) {
       faults.push({ pointer: pointerOf(['ionization', 'table', ...chargeTablePath(path)]), detail });
     }
   }
+  const resolved = await screenedAs(input, crystal, tables, faults, crystalAt);
   if (faults.length > 0) return refuse();
   return {
     scenario: {
       ...input,
-      crystal: { id: crystal.id, screened: header.screened },
+      crystal: resolved,
       ionization: { ...input.ionization, bandGapEv, energyPerPairEv, table: chargeTable },
     },
     table: tableOf(header, crystal.values),

@@ -7,6 +7,8 @@ export interface RunOptions {
 }
 
 export interface Compute {
+  /** Threads; more jobs than these wait. */
+  readonly workers: number;
   run<N extends TaskName>(task: N, input: TaskInput<N>, options?: RunOptions): Promise<Awaited<TaskOutput<N>>>;
   close(): Promise<void>;
 }

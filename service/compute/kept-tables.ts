@@ -1,16 +1,28 @@
 /**
  * One table object for each table a thread has seen. Every job brings a fresh object around the same shared values; what the
- * calculation remembers of a table (its momentum panels) hangs on the object.
+ * calculation remembers of a table (its momentum panels) hangs on the object. A screened twin is computed once a thread, from
+ * the table as given, and kept beside it.
  */
 import type { CrystalTable } from '../../physics/crystal/crystal-table.ts';
+import { screenedTwin } from '../../physics/crystal/dielectric.ts';
+import type { ResolvedCrystal } from './resolved-scenario.ts';
 
 const MOST_TABLES = 16;
+/** A twin has values of its own in every thread: fewer of them. */
+const MOST_TWINS = 4;
 const tables = new Map<string, CrystalTable>(); // least recently used first
+const twins = new Map<string, CrystalTable>();
 
-export function keptTable(id: string, table: CrystalTable): CrystalTable {
-  const kept = tables.get(id) ?? table;
-  tables.delete(id);
-  tables.set(id, kept);
-  if (tables.size > MOST_TABLES) tables.delete(tables.keys().next().value!);
-  return kept;
+/** The table that a scenario's rates are made of: `table` as it was given, or its screened twin. */
+export function keptTable({ id, twin, electronsPerCell }: ResolvedCrystal, table: CrystalTable): CrystalTable {
+  const given = kept(tables, MOST_TABLES, id, () => table);
+  return twin === 'used' ? kept(twins, MOST_TWINS, id, () => screenedTwin(given, electronsPerCell)) : given;
+}
+
+function kept(from: Map<string, CrystalTable>, most: number, id: string, make: () => CrystalTable): CrystalTable {
+  const table = from.get(id) ?? make();
+  from.delete(id);
+  from.set(id, table);
+  if (from.size > most) from.delete(from.keys().next().value!);
+  return table;
 }

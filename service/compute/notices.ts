@@ -1,6 +1,7 @@
 /** What a reader of the numbers should know, one sentence or two for each. */
 import type { CrystalRate, RangeCut } from '../../physics/rate/crystal-rate.ts';
 import type { ResolvedScenario } from './resolved-scenario.ts';
+import { screeningNotices } from './screening-notices.ts';
 
 export interface NoticeOut {
   code: string;
@@ -9,20 +10,14 @@ export interface NoticeOut {
 
 const significant = (value: number, digits = 4): string => String(Number(value.toPrecision(digits)));
 
+export const PLANNING_ESTIMATE: NoticeOut = {
+  code: 'planning-estimate',
+  detail: 'A planning estimate. The collaboration’s own analysis of its detector takes precedence.',
+};
+
 export function rateNotices(scenario: ResolvedScenario, rate: CrystalRate): NoticeOut[] {
-  const notices: NoticeOut[] = [
-    {
-      code: 'planning-estimate',
-      detail: 'A planning estimate. The collaboration’s own analysis of its detector takes precedence.',
-    },
-  ];
-  if (!scenario.crystal.screened) {
-    notices.push({
-      code: 'unscreened-table',
-      detail:
-        'The table does not include in-medium screening; the rates are those of independent electrons, too high at small momentum transfer.',
-    });
-  }
+  const notices: NoticeOut[] = [PLANNING_ESTIMATE];
+  notices.push(...screeningNotices(scenario.crystal));
   const { massMev, massSplittingEv } = scenario.darkMatter;
   const beyond = firstUnreachable(scenario, rate);
   if (beyond) {

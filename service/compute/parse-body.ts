@@ -26,23 +26,31 @@ export function parseBody({ body, bytes }: ParseJob): unknown {
 
 function namedCrystals(json: unknown): NamedCrystal[] {
   return scenarioPlaces(json).flatMap(({ path, scenario }) => {
-    const id = (scenario['crystal'] as { id?: unknown } | null | undefined)?.id;
-    return typeof id === 'string' ? [{ pointer: pointerOf([...path, 'crystal', 'id']), id }] : [];
+    const { crystal } = scenario;
+    const at = [...path, 'crystal'];
+    const named = Array.isArray(crystal)
+      ? crystal.map((one: unknown, i) => ({ one, at: [...at, i] }))
+      : [{ one: crystal, at }];
+    return named.flatMap(({ one, at: place }) => {
+      const id = (one as { id?: unknown } | null | undefined)?.id;
+      return typeof id === 'string' ? [{ pointer: pointerOf([...place, 'id']), id }] : [];
+    });
   });
 }
 
-function jsonOf(bytes: Uint8Array): unknown {
+/** JSON out of bytes; `what` names them where they are none. */
+export function jsonOf(bytes: Uint8Array, what = 'body'): unknown {
   let text: string;
   try {
     text = new TextDecoder('utf-8', { fatal: true }).decode(bytes);
   } catch {
-    throw new Problem('malformed-body', 'The body is not UTF-8.');
+    throw new Problem('malformed-body', `The ${what} is not UTF-8.`);
   }
-  if (nestingOf(bytes) > DEEPEST) throw new Problem('malformed-body', `The body nests deeper than ${DEEPEST} levels.`);
+  if (nestingOf(bytes) > DEEPEST) throw new Problem('malformed-body', `The ${what} nests deeper than ${DEEPEST} levels.`);
   try {
     return JSON.parse(text);
   } catch (error) {
-    throw new Problem('malformed-body', `The body is not JSON: ${reasonOf(error as SyntaxError)}.`);
+    throw new Problem('malformed-body', `The ${what} is not JSON: ${reasonOf(error as SyntaxError)}.`);
   }
 }
 

@@ -31,6 +31,7 @@ export function computePool({ workers, queue }: PoolOptions): Compute {
   const mostJobs = workers + queue;
   let jobs = 0;
   return {
+    workers,
     async run(task, input, options = {}) {
       if (jobs >= mostJobs) throw new Problem('busy', 'Too many computations are waiting.', [], { 'Retry-After': '1' });
       jobs++;

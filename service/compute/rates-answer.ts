@@ -3,7 +3,7 @@ import type { CrystalTable } from '../../physics/crystal/crystal-table.ts';
 import type { ReadoutResponse } from '../../physics/detector/readout.ts';
 import type { Background } from '../../physics/exposure/needed-exposure.ts';
 import { type CrystalRate, crystalRate, type Estimate } from '../../physics/rate/crystal-rate.ts';
-import { Problem } from '../problem.ts';
+import { invalidInput, type Problem } from '../problem.ts';
 import type { RatesAnswer } from '../schemas/rates.ts';
 import { ionizationModelOf, measuredBackgrounds, measuredSignal, readoutOf } from './detector-view.ts';
 import { rateOut, sumOf } from './estimates.ts';
@@ -29,7 +29,7 @@ export function rateOf({ scenario, table }: RatesJob, lastElectron: number): Cry
       splittingEv: darkMatter.massSplittingEv,
       localDensityGevPerCm3: halo.localDensityGevPerCm3,
       halo: haloOf(halo),
-      table: keptTable(scenario.crystal.id, table),
+      table: keptTable(scenario.crystal, table),
       ionization: ionizationModelOf(ionization),
       energyPerPairEv: ionization.energyPerPairEv,
       maxElectrons: lastElectron,
@@ -112,7 +112,11 @@ function refuseUnrepresentable(rate: CrystalRate): void {
   const rates = [...numbers, ...spectrum].every((value) => value >= 0 && value < Infinity);
   const ends = [rate.largestEnergyEv, rate.smallestMassEv, ...rate.bins.map((bin) => bin.toEv)];
   if (rates && ends.every(Number.isFinite)) return;
-  throw new Problem('invalid-input', 'The request has 1 fault.', [
+  throw unrepresentable();
+}
+
+export function unrepresentable(): Problem {
+  return invalidInput([
     { pointer: '', detail: 'the numbers are so large or so small that the rate cannot be represented' },
   ]);
 }

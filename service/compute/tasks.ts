@@ -4,9 +4,14 @@
 import { type BuiltIn, type CatalogueEntry, loadBuiltIn } from '../crystals/built-in.ts';
 import type { StoredHeader, TableRecord } from '../crystals/crystal-record.ts';
 import { listTables, readHeader, readTable, removeTable, writeTable } from '../crystals/table-files.ts';
+import { readUpload, type UploadJob } from '../crystals/upload/read-upload.ts';
 import { type MeanInverseSpeedJob, meanInverseSpeedAnswer } from './mean-inverse-speed-answer.ts';
 import { type ParseJob, parseBody } from './parse-body.ts';
+import { type QualityJob, qualityAnswer } from './quality-answer.ts';
 import { type RatesJob, ratesAnswer } from './rates-answer.ts';
+import { type ReachPointJob, reachPointAnswer } from './reach-point-answer.ts';
+import { type RegridJob, regridAnswer } from './regrid-answer.ts';
+import { type TableComparisonJob, tableComparisonAnswer } from './table-comparison-answer.ts';
 import { type TradeOffsJob, tradeOffsAnswer } from './trade-offs-answer.ts';
 import { type ValuesJob, valuesText } from './values-text.ts';
 
@@ -16,9 +21,14 @@ interface InFolder {
 
 export const TASKS = {
   rates: (job: RatesJob) => ratesAnswer(job),
+  reachPoint: (job: ReachPointJob) => reachPointAnswer(job),
   tradeOffs: (job: TradeOffsJob) => tradeOffsAnswer(job),
+  tableComparison: (job: TableComparisonJob) => tableComparisonAnswer(job),
   meanInverseSpeed: (job: MeanInverseSpeedJob) => meanInverseSpeedAnswer(job),
   parseBody: (job: ParseJob) => parseBody(job),
+  readUpload: (job: UploadJob) => readUpload(job),
+  quality: (job: QualityJob) => qualityAnswer(job),
+  regrid: (job: RegridJob) => regridAnswer(job),
   valuesText: (job: ValuesJob) => valuesText(job),
   loadBuiltIn: (job: InFolder & { readonly entry: CatalogueEntry }): BuiltIn => loadBuiltIn(job.folder, job.entry),
   readTable: (job: InFolder & { readonly id: string }): TableRecord<StoredHeader> | undefined =>

@@ -4,9 +4,9 @@ import { TASKS, type TaskName } from './tasks.ts';
 
 export type WorkerAnswer = { readonly value: unknown } | { readonly failure: Failure };
 
-export default function work({ task, input }: { task: TaskName; input: unknown }): WorkerAnswer {
+export default async function work({ task, input }: { task: TaskName; input: unknown }): Promise<WorkerAnswer> {
   try {
-    return { value: (TASKS[task] as (input: unknown) => unknown)(input) };
+    return { value: await (TASKS[task] as (input: unknown) => unknown)(input) };
   } catch (error) {
     return { failure: failureOf(error) };
   }

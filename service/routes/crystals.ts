@@ -1,5 +1,6 @@
 import type { Context } from 'hono';
 import { Problem } from '../problem.ts';
+import { qualityOf } from '../quality-reports.ts';
 import { defineRoute, negotiate } from '../route.ts';
 import { CrystalDescription, CrystalList, CrystalValues } from '../schemas/crystal.ts';
 
@@ -18,7 +19,7 @@ const table = {
   energy: { unit: 'eV', edges: { start: 0, step: 4, count: 4 } },
 };
 
-function unknownTable(name: string): Problem {
+export function unknownTable(name: string): Problem {
   return new Problem('not-found', `No table has the id or alias "${name}"; GET /v1/crystals lists them.`);
 }
 
@@ -73,12 +74,14 @@ export const postCrystal = defineRoute({
     201: { description: 'Stored.', schema: CrystalDescription, headers: { Location: 'Where the table is.' } },
   },
   problems: ['malformed-body', 'not-acceptable', 'too-large', 'media-type', 'invalid-input', 'busy', 'storage-full'],
-  async handle({ c, body, dependencies: { crystals } }) {
+  async handle({ c, body, dependencies: { crystals, compute }, signal }) {
     negotiate(c, ['application/json']);
+    const { momentumUnit, ...record } = body;
     // not stopped when the caller leaves: a table is stored whole or not at all, and it is soon done
-    const { created } = await crystals.add(body);
+    const { created } = await crystals.add(record);
+    const quality = await qualityOf(record, compute, signal, momentumUnit);
     c.header('Location', `/v1/crystals/${body.id}`);
-    return c.json(await crystals.describe(body.id), created ? 201 : 200);
+    return c.json({ ...(await crystals.describe(body.id)), quality }, created ? 201 : 200);
   },
 });
 
@@ -102,19 +105,22 @@ export const getCrystal = defineRoute({
   path: '/v1/crystals/{id}',
   operationId: 'describeCrystal',
   tag: 'crystals',
-  summary: 'One table: axes, provenance, stated accuracy',
+  summary: 'One table: axes, provenance, stated accuracy, quality report',
   parameters: { id: ID },
   responses: {
     200: { description: 'The description.', schema: CrystalDescription, headers: { ETag: 'The id of the table.' } },
   },
   problems: ['not-found', 'not-acceptable', 'busy'],
-  async handle({ c, dependencies: { crystals } }) {
+  async handle({ c, dependencies: { crystals, compute }, signal }) {
     negotiate(c, ['application/json']);
     const name = c.req.param('id')!;
-    const description = await crystals.describe(name);
-    if (!description) throw unknownTable(name);
-    const { headers, unchanged } = validatorsOf(c, description.id, crystals.isAlias(name), '');
-    return unchanged ? c.body(null, 304, headers) : c.json(description, 200, headers);
+    const record = await crystals.find(name);
+    if (!record) throw unknownTable(name);
+    const { headers, unchanged } = validatorsOf(c, record.id, crystals.isAlias(name), '');
+    if (unchanged) return c.body(null, 304, headers);
+    const description = await crystals.describe(record.id);
+    const quality = await qualityOf(record, compute, signal);
+    return c.json({ ...description, quality }, 200, headers);
   },
 });
 

@@ -6,11 +6,12 @@ import type { QuantityKind } from '../../physics/quantity/quantity.ts';
 import { QuantityError, quantityOf } from '../../physics/quantity/quantity.ts';
 import { contentOf, idOf } from '../crystals/crystal-record.ts';
 import { isPackedMatrix, MATRIX_FIELDS, type PackedMatrix } from '../crystals/matrix.ts';
+import { Quality } from './quality.ts';
 import { ABOVE_ZERO, AT_LEAST_ZERO, KINDS, quantity, quantityOut } from './quantity.ts';
 
 const MOST_AXIS_NUMBERS = 100_000;
 
-const AxisNumbers = z
+export const AxisNumbers = z
   .union(
     [
       z.array(z.number()).min(2).max(MOST_AXIS_NUMBERS),
@@ -27,7 +28,13 @@ const AxisNumbers = z
     description: 'Strictly increasing numbers of at least 0: a list, or start + i·step for i = 0 … count − 1.',
   });
 
+export function axisNumbersOf(given: z.output<typeof AxisNumbers>): readonly number[] {
+  return Array.isArray(given) ? given : Array.from({ length: given.count }, (_, i) => given.start + i * given.step);
+}
+
 interface Axis {
+  /** As it was written. */
+  readonly unit: string;
   readonly kind: AxisKind;
   readonly values: readonly number[];
 }
@@ -60,9 +67,7 @@ function axis(id: string, of: QuantityKind, what: string) {
         if (!(error instanceof QuantityError)) throw error;
         context.addIssue({ code: 'custom', path: ['unit'], message: error.message });
       }
-      const numbers = Array.isArray(given)
-        ? given
-        : Array.from({ length: given.count }, (_, i) => given.start + i * given.step);
+      const numbers = axisNumbersOf(given);
       const values = Number.isNaN(factor) ? numbers : numbers.map((value) => value * factor);
       const offender = values.findIndex(
         (value, i) => !(value >= 0 && value < Infinity) || (i > 0 && !(value > values[i - 1])),
@@ -73,7 +78,7 @@ function axis(id: string, of: QuantityKind, what: string) {
         const message = `must be finite, at least 0 and strictly increasing; number ${offender} is ${is}`;
         context.addIssue({ code: 'custom', path, message });
       }
-      return { kind, values };
+      return { unit: input.unit, kind, values };
     });
 }
 
@@ -133,6 +138,10 @@ export interface CrystalInput {
   readonly header: CrystalHeader;
   /** Row-major, on shared memory. */
   readonly values: Float64Array;
+  /** The unit in which momenta were sent: no part of the table, but of what its quality report asks. */
+  readonly momentumUnit?: string;
+  /** What was found out of an uploaded file rather than said by the caller. */
+  readonly inferred?: readonly string[];
 }
 
 const tableFields = z
@@ -262,7 +271,7 @@ export const CrystalTableIn = tableFields.transform((table): CrystalInput => {
     momentumKev: table.momentum.values,
     energyEv: table.energy.values,
   };
-  return { id: idOf(contentOf(header, values)), header, values };
+  return { id: idOf(contentOf(header, values)), header, values, momentumUnit: table.momentum.unit };
 });
 
 const AxisSummary = z
@@ -295,6 +304,11 @@ export const CrystalDescription = z
     energyPerPair: quantityOut('eV').optional(),
     momentum: AxisSummary,
     energy: AxisSummary,
+    inferred: z
+      .array(z.string())
+      .optional()
+      .meta({ description: 'In the answer to an upload: what was found out of the file rather than said.' }),
+    quality: Quality.optional().meta({ description: 'In the description of one table; the list goes without.' }),
     links: z.strictObject({ self: z.string(), values: z.string() }),
   })
   .meta({ id: 'CrystalDescription', description: 'A stored table without its values.' });

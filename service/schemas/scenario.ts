@@ -8,6 +8,7 @@ import { Goal, type GoalIn } from './goal.ts';
 import { DEFAULT_HALO, Halo, type HaloIn } from './halo.ts';
 import { DEFAULT_IONIZATION, Ionization, type IonizationIn } from './ionization.ts';
 import { ABOVE_ZERO, ANY_SIGN, KINDS, quantity } from './quantity.ts';
+import { Screening } from './screening.ts';
 
 export interface DarkMatterIn {
   readonly massMev: number;
@@ -32,7 +33,14 @@ const MediatorIn = z
     (input): Mediator => (typeof input === 'string' ? { kind: input } : { kind: 'massive', massEv: input.mass * 1e3 }),
   );
 
-const DarkMatter = z
+const MassSplitting = quantity(
+  'MassSplitting',
+  KINDS.energy,
+  ANY_SIGN,
+  'δ > 0 up-, δ < 0 down-scattering; above minus the band gap.',
+).default(0);
+
+export const DarkMatter = z
   .strictObject({
     mass: quantity('DarkMatterMass', KINDS.mass, ABOVE_ZERO, 'Mass m_χ of the particle.'),
     referenceCrossSection: quantity(
@@ -42,12 +50,7 @@ const DarkMatter = z
       'Cross section σ̄ₑ with a free electron at q = α mₑ.',
     ),
     mediator: MediatorIn,
-    massSplitting: quantity(
-      'MassSplitting',
-      KINDS.energy,
-      ANY_SIGN,
-      'δ > 0 up-, δ < 0 down-scattering; above minus the band gap.',
-    ).default(0),
+    massSplitting: MassSplitting,
   })
   .meta({ id: 'DarkMatter', description: 'The dark-matter hypothesis. massSplitting defaults to 0 eV.' })
   .transform(
@@ -78,6 +81,7 @@ export interface ScenarioIn {
   readonly darkMatter: DarkMatterIn;
   readonly halo: HaloIn;
   readonly crystal: CrystalIn;
+  readonly screening: Screening;
   readonly ionization: IonizationIn;
   readonly readout: ReadoutIn | undefined;
   readonly backgrounds: readonly BackgroundIn[];
@@ -157,34 +161,97 @@ function checkBackgrounds(
   });
 }
 
+/** Everything of a scenario but its dark matter and its crystal, which a reach asks for in other forms. */
+const sections = {
+  halo: Halo.optional(),
+  screening: Screening,
+  ionization: Ionization.optional(),
+  readout: Readout.optional(),
+  backgrounds: Backgrounds.optional().meta({ description: 'Everything but the signal that is counted, at most 50.' }),
+  goal: Goal.optional(),
+};
+
+interface Sections {
+  readonly halo?: HaloIn | undefined;
+  readonly screening: Screening;
+  readonly ionization?: IonizationIn | undefined;
+  readonly readout?: ReadoutIn | undefined;
+  readonly backgrounds?: readonly BackgroundIn[] | undefined;
+  readonly goal?: GoalIn | undefined;
+}
+
+/** Defaults filled in; the default window is part of the canonical request. */
+function filled({ halo, screening, ionization = DEFAULT_IONIZATION, readout, backgrounds = [], goal }: Sections) {
+  return {
+    halo: halo ?? DEFAULT_HALO,
+    screening,
+    ionization,
+    readout,
+    backgrounds,
+    goal: goal && { ...goal, window: goal.window ?? { from: 1, to: ionization.maxElectrons } },
+  };
+}
+
 export const Scenario = z
   .strictObject({
     darkMatter: DarkMatter,
-    halo: Halo.optional(),
     crystal: Crystal,
-    ionization: Ionization.optional(),
-    readout: Readout.optional(),
-    backgrounds: Backgrounds.optional().meta({ description: 'Everything but the signal that is counted, at most 50.' }),
-    goal: Goal.optional(),
+    ...sections,
     payload: Payload.optional(),
     spectrum: z.boolean().default(false).meta({ description: 'Adds dR/dE on the table’s energy axis.' }),
   })
   .superRefine(checkScenario, { when: () => true })
   .meta({ id: 'Scenario', description: 'A scenario. Without a goal the answer has rates only.' })
   .transform(
-    (scenario): ScenarioIn => ({
-      darkMatter: scenario.darkMatter,
-      halo: scenario.halo ?? DEFAULT_HALO,
-      crystal: scenario.crystal,
-      ionization: scenario.ionization ?? DEFAULT_IONIZATION,
-      readout: scenario.readout,
-      backgrounds: scenario.backgrounds ?? [],
-      // the default window is part of the canonical request
-      goal: scenario.goal && {
-        ...scenario.goal,
-        window: scenario.goal.window ?? { from: 1, to: (scenario.ionization ?? DEFAULT_IONIZATION).maxElectrons },
-      },
-      payload: scenario.payload,
-      spectrum: scenario.spectrum,
+    ({ darkMatter, crystal, payload, spectrum, ...rest }): ScenarioIn => ({
+      darkMatter,
+      crystal,
+      ...filled(rest),
+      payload,
+      spectrum,
+    }),
+  );
+
+const MOST_TABLES = 8;
+
+/** A scenario whose mass and cross section are what is asked for; several tables in place of one make a band. */
+export interface ReachScenarioIn extends Omit<ScenarioIn, 'darkMatter' | 'crystal'> {
+  readonly darkMatter: Pick<DarkMatterIn, 'mediator' | 'massSplittingEv'>;
+  readonly crystals: readonly CrystalIn[];
+}
+
+function checkReachScenario(input: unknown, context: z.RefinementCtx): void {
+  checkScenario(input, context);
+  if (typeof input !== 'object' || input === null || Array.isArray(input)) return;
+  if ((input as { goal?: unknown }).goal === undefined) {
+    context.addIssue({ code: 'custom', path: ['goal'], message: 'is needed: it is what the exposure is to achieve' });
+  }
+}
+
+export const ReachScenario = z
+  .strictObject({
+    darkMatter: z
+      .strictObject({ mediator: MediatorIn, massSplitting: MassSplitting })
+      .meta({ id: 'ReachDarkMatter', description: 'The hypothesis but for mass and cross section.' })
+      .transform((dm) => ({ mediator: dm.mediator, massSplittingEv: dm.massSplitting })),
+    crystal: z
+      .union([Crystal, z.array(Crystal).min(1).max(MOST_TABLES)], {
+        error: () => 'must be {"id": "…"} of a stored table, a whole table, or a list of them',
+      })
+      .meta({
+        id: 'CrystalOrBand',
+        description: 'One table, or a list of them: then the answer has a band, lowest and highest.',
+      }),
+    ...sections,
+  })
+  .superRefine(checkReachScenario, { when: () => true })
+  .meta({ id: 'ReachScenario', description: 'A scenario without mass and cross section; its goal is needed.' })
+  .transform(
+    ({ darkMatter, crystal, ...rest }): ReachScenarioIn => ({
+      darkMatter,
+      crystals: Array.isArray(crystal) ? crystal : [crystal],
+      ...filled(rest),
+      payload: undefined,
+      spectrum: false,
     }),
   );

@@ -165,7 +165,7 @@ describe('document', () => {
 });
 
 describe('failures', () => {
-  const failing = (error: unknown) => testApp({ compute: { run: () => Promise.reject(error), async close() {} } });
+  const failing = (error: unknown) => testApp({ compute: { run: () => Promise.reject(error), workers: 1, async close() {} } });
 
   test('POST /v1/rates: the unknown is a bare 500 to the caller, everything to the log', async () => {
     const broken = failing(new Error('secret in /srv/data'));
@@ -183,6 +183,7 @@ describe('failures', () => {
           new Promise((_resolve, reject) => {
             options!.signal!.addEventListener('abort', () => reject(options!.signal!.reason as Error));
           }),
+        workers: 1,
         async close() {},
       },
     });

@@ -406,7 +406,7 @@ describe('GET /v1/crystals/{id}/values', () => {
 
   test('GET /v1/crystals/{id}/values: a failure carries no validators, whatever the origin', async () => {
     const run = () => Promise.reject(new Error('broken on purpose'));
-    const broken = testApp({ corsOrigins: ['https://a.example'], compute: { run, async close() {} } });
+    const broken = testApp({ corsOrigins: ['https://a.example'], compute: { run, workers: 1, async close() {} } });
     const { id } = (await (await app.get('/v1/crystals/silicon')).json()) as { id: string };
     for (const headers of [{}, { origin: 'https://a.example' }]) {
       const response = await broken.get(`/v1/crystals/${id}/values`, headers);
@@ -455,6 +455,7 @@ describe('DELETE /v1/crystals/{id}', () => {
           }
           return (await inProcess.run(task, input, options)) as never;
         },
+        workers: 1,
         async close() {},
       },
     });
