@@ -19,21 +19,26 @@ const SMALL_BYTES = 32 * 2 ** 10;
 const MOST_BYTES_HELD = 512 * 2 ** 20;
 
 export interface BodyReader {
-  read<N extends BodyName>(c: Context, body: N, signal: AbortSignal): Promise<z.output<(typeof BODIES)[N]>>;
+  /** `alternatives` are the media types beside JSON that are read elsewhere. */
+  read<N extends BodyName>(
+    c: Context,
+    body: N,
+    signal: AbortSignal,
+    alternatives?: readonly string[],
+  ): Promise<z.output<(typeof BODIES)[N]>>;
 }
 
 export function bodyReader(compute: Compute): BodyReader {
   let held = 0;
   return {
-    async read(c, body, signal) {
-      requireJson(c.req.header('content-type'));
+    async read(c, body, signal, alternatives = []) {
+      requireJson(c.req.header('content-type'), alternatives);
       const chunks: Uint8Array[] = [];
       let size = 0;
       try {
-        for await (const chunk of decodedBody(c)) {
+        for await (const chunk of decodedBody(c, MOST_JSON_BYTES, 'of JSON')) {
           size += chunk.length;
           held += chunk.length;
-          if (size > MOST_JSON_BYTES) throw tooLarge();
           if (held > MOST_BYTES_HELD)
             throw new Problem('busy', 'Too many large requests at once.', [], { 'Retry-After': '2' });
           chunks.push(chunk);
@@ -54,23 +59,42 @@ export function bodyReader(compute: Compute): BodyReader {
   };
 }
 
-function tooLarge(): Problem {
-  return new Problem('too-large', `The body is larger than ${MOST_JSON_BYTES / 2 ** 20} MiB of JSON.`);
+function tooLarge(mostBytes: number, what: string): Problem {
+  return new Problem('too-large', `The body is larger than ${mostBytes / 2 ** 20} MiB ${what}.`);
 }
 
-function requireJson(contentType: string | undefined): void {
+function requireJson(contentType: string | undefined, alternatives: readonly string[]): void {
   const match = /^application\/(?:[\w.+-]+\+)?json\s*(?:;\s*charset\s*=\s*"?([\w-]+)"?\s*)?$/i.exec(contentType ?? '');
   if (match && (match[1] === undefined || /^utf-?8$/i.test(match[1]))) return;
-  throw new Problem('media-type', 'Send application/json in UTF-8.', [], { 'Accept-Post': 'application/json' });
+  const others = alternatives.map((type) => `, or ${type}`).join('');
+  throw new Problem('media-type', `Send application/json in UTF-8${others}.`, [], {
+    'Accept-Post': ['application/json', ...alternatives].join(', '),
+  });
 }
 
-/** The body's bytes, decompressed. A broken archive, or one with something behind it, is a malformed body. */
-async function* decodedBody(c: Context): AsyncGenerator<Uint8Array> {
+/**
+ * The body's bytes, decompressed: at most `mostBytes` of them, before and after. A broken archive, or one with something behind
+ * it, is a malformed body.
+ */
+export async function* decodedBody(c: Context, mostBytes: number, what: string): AsyncGenerator<Uint8Array> {
+  let size = 0;
+  for await (const chunk of unboundedBody(c, mostBytes, what)) {
+    size += chunk.length;
+    if (size > mostBytes) throw tooLarge(mostBytes, what);
+    yield chunk;
+  }
+}
+
+async function* unboundedBody(c: Context, mostBytes: number, what: string): AsyncGenerator<Uint8Array> {
   const encoding = (c.req.header('content-encoding') ?? 'identity').trim().toLowerCase();
   const declared = Number(c.req.header('content-length') ?? 0);
-  if (declared > MOST_JSON_BYTES) throw tooLarge();
+  if (declared > mostBytes) throw tooLarge(mostBytes, what);
   const body = c.req.raw.body;
   if (!body) return;
+  if (encoding === 'identity' && declared > 0 && declared <= SMALL_BYTES) {
+    yield new Uint8Array(await c.req.arrayBuffer()); // the server holds a body to its declared length: no stream is needed
+    return;
+  }
   const source = Readable.fromWeb(body as never);
   if (encoding === 'identity') {
     yield* source;

@@ -25,6 +25,8 @@ export const HEAVIEST_EV = 1e10;
 /** Part of the rate in the last 5 % of an axis above which the table is taken to miss "a few per cent" beyond: a rate falls by e in
  * a tenth to a fifth of the axis. */
 const LARGEST_EDGE_SHARE = 0.01;
+/** Where there is no gap any mass frees electrons; coverage is looked for from here on. */
+const LIGHTEST_EV = 1e3;
 /** The heaviest mass is found to this ratio. */
 const MASS_STEP = 1.1;
 
@@ -70,7 +72,7 @@ export function massCoverage(
   const fromEv = rateAt(HEAVIEST_EV).smallestMassEv;
   let cut = upperCut(HEAVIEST_EV);
   if (!isShort(cut)) return { mediator, fromEv, toEv: undefined, limit: undefined, lowerMomentumShare };
-  let [covered, short] = [fromEv, HEAVIEST_EV];
+  let [covered, short] = [Math.max(fromEv, LIGHTEST_EV), HEAVIEST_EV];
   while (short > covered * MASS_STEP) {
     const middle = Math.sqrt(covered * short);
     const here = upperCut(middle);

@@ -5,7 +5,7 @@
  */
 import { DomainError, requirePositive } from '../errors.ts';
 import type { GalacticVelocity } from './galactic-velocity.ts';
-import { type GaussianComponent, gaussianComponent } from './gaussian-component.ts';
+import { type GaussianComponent, gaussianComponent, largestComponentSpeedKmPerS } from './gaussian-component.ts';
 import type { VelocityDistribution } from './velocity-distribution.ts';
 
 export interface WeightedComponent extends GaussianComponent {
@@ -27,19 +27,7 @@ export function componentsHalo(
   components: readonly WeightedComponent[],
   laboratory: GalacticVelocity,
 ): VelocityDistribution {
-  if (components.length === 0) throw new DomainError('components', '[]', 'at least one component');
-  const parts = components.map((component, i) => {
-    try {
-      requirePositive('weight', component.weight);
-      return gaussianComponent(component, laboratory);
-    } catch (error) {
-      if (!(error instanceof DomainError) || error.parameter[0] === 'laboratoryVelocity') throw error;
-      throw new DomainError(['components', i, ...error.parameter], error.value, error.allowed);
-    }
-  });
-  const sum = components.reduce((total, { weight }) => total + weight, 0);
-  if (!(sum < Infinity)) throw new DomainError('components', sum, 'weights with a finite sum');
-  const weights = components.map(({ weight }) => weight / sum);
+  const { parts, weights } = weighted(components, (component) => gaussianComponent(component, laboratory));
   const largestSpeedKmPerS = Math.max(...parts.map((part) => part.largestSpeedKmPerS));
   const inside = (speeds: readonly number[]): number[] =>
     speeds
@@ -58,6 +46,35 @@ export function componentsHalo(
       return eta;
     },
   };
+}
+
+/**
+ * The largest speed of the components together in the laboratory, km/s, without the integrals.
+ *
+ * @throws DomainError as componentsHalo: a cheap check of what a caller wrote
+ */
+export function largestSpeedOfComponentsKmPerS(
+  components: readonly WeightedComponent[],
+  laboratory: GalacticVelocity,
+): number {
+  return Math.max(...weighted(components, (component) => largestComponentSpeedKmPerS(component, laboratory)).parts);
+}
+
+/** Something made of each component, and the components' shares. Errors say which component. */
+function weighted<T>(components: readonly WeightedComponent[], make: (component: WeightedComponent) => T) {
+  if (components.length === 0) throw new DomainError('components', '[]', 'at least one component');
+  const parts = components.map((component, i) => {
+    try {
+      requirePositive('weight', component.weight);
+      return make(component);
+    } catch (error) {
+      if (!(error instanceof DomainError) || error.parameter[0] === 'laboratoryVelocity') throw error;
+      throw new DomainError(['components', i, ...error.parameter], error.value, error.allowed);
+    }
+  });
+  const sum = components.reduce((total, { weight }) => total + weight, 0);
+  if (!(sum < Infinity)) throw new DomainError('components', sum, 'weights with a finite sum');
+  return { parts, weights: components.map(({ weight }) => weight / sum) };
 }
 
 /**

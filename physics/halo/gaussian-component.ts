@@ -19,6 +19,7 @@
  */
 import { DomainError, requireNonNegative, requirePositive } from '../errors.ts';
 import { gaussLegendre, type QuadratureRule } from '../numeric/gauss-legendre.ts';
+import { intervalOf } from '../numeric/interval.ts';
 import { type GalacticVelocity, requireVelocity, speedOf, velocityDifference } from './galactic-velocity.ts';
 import { standardHalo } from './standard-halo.ts';
 import type { VelocityDistribution } from './velocity-distribution.ts';
@@ -49,6 +50,51 @@ const FAR_CUT = 7.5;
  *   LARGEST_AXIS_RATIO; a mean velocity at or above the escape speed; a cold stream at rest in the laboratory (η is infinite)
  */
 export function gaussianComponent(component: GaussianComponent, laboratory: GalacticVelocity): VelocityDistribution {
+  const outline = outlineOf(component, laboratory);
+  const { axes, wind, cut, isFarCut, largestSpeedKmPerS } = outline;
+  switch (outline.form) {
+    case 'cold':
+      return coldStream(wind);
+    case 'closed':
+      return withSections(
+        standardHalo({
+          circularSpeedKmPerS: Math.SQRT2 * axes[0],
+          escapeSpeedKmPerS: cut,
+          laboratorySpeedKmPerS: wind,
+          cutoff: 'sharp',
+        }),
+        wind - cut,
+        axes[0],
+      );
+    case 'ellipsoid': {
+      const { meanVelocityKmPerS: mean, escapeSpeedKmPerS: vEsc } = component;
+      return ellipsoid(axes, mean, vEsc, laboratory, isFarCut, largestSpeedKmPerS);
+    }
+  }
+}
+
+/**
+ * The largest speed of a component in the laboratory, km/s, without the integrals: microseconds.
+ *
+ * @throws DomainError as gaussianComponent
+ */
+export function largestComponentSpeedKmPerS(component: GaussianComponent, laboratory: GalacticVelocity): number {
+  return outlineOf(component, laboratory).largestSpeedKmPerS;
+}
+
+/** What a component is known by before any integral. */
+interface Outline {
+  readonly axes: GalacticVelocity;
+  readonly form: 'cold' | 'closed' | 'ellipsoid';
+  /** |u − V|, km/s. */
+  readonly wind: number;
+  /** The closed form's, about its own mean, km/s. */
+  readonly cut: number;
+  readonly isFarCut: boolean;
+  readonly largestSpeedKmPerS: number;
+}
+
+function outlineOf(component: GaussianComponent, laboratory: GalacticVelocity): Outline {
   const { dispersionKmPerS, meanVelocityKmPerS: mean, escapeSpeedKmPerS: vEsc } = component;
   requirePositive('escapeSpeed', vEsc);
   requireVelocity('escapeSpeed', [vEsc, 0, 0]);
@@ -58,38 +104,33 @@ export function gaussianComponent(component: GaussianComponent, laboratory: Gala
     typeof dispersionKmPerS === 'number' ? [dispersionKmPerS, dispersionKmPerS, dispersionKmPerS] : dispersionKmPerS;
   for (const sigma of axes) requireNonNegative('dispersion', sigma);
   const [smallest, largest] = [Math.min(...axes), Math.max(...axes)];
-  requireVelocity('dispersion', [largest, 0, 0]);
+  requireVelocity('dispersion', [Math.SQRT2 * largest, 0, 0]);
   if (largest > LARGEST_AXIS_RATIO * smallest)
     throw new DomainError('dispersion', axes, `axes within a factor ${LARGEST_AXIS_RATIO} of one another, or all 0`);
   const meanSpeed = speedOf(mean);
   if (!(meanSpeed < vEsc)) throw new DomainError('meanVelocity', mean, `slower than the escape speed, ${vEsc} km/s`);
 
   const wind = speedOf(velocityDifference(mean, laboratory));
-  if (largest === 0) return coldStream(wind);
   const isFarCut = vEsc - meanSpeed > FAR_CUT * largest;
+  if (largest === 0) {
+    requireMoving(wind);
+    return { axes, form: 'cold', wind, cut: 0, isFarCut, largestSpeedKmPerS: wind };
+  }
   if (smallest === largest && (meanSpeed === 0 || isFarCut)) {
     const cut = meanSpeed === 0 ? vEsc : Math.min(vEsc - meanSpeed, REACH * largest);
-    return withSections(
-      standardHalo({
-        circularSpeedKmPerS: Math.SQRT2 * largest,
-        escapeSpeedKmPerS: cut,
-        laboratorySpeedKmPerS: wind,
-        cutoff: 'sharp',
-      }),
-      wind - cut,
-      largest,
-    );
+    return { axes, form: 'closed', wind, cut, isFarCut, largestSpeedKmPerS: cut + wind };
   }
-  return ellipsoid(axes, mean, vEsc, laboratory, isFarCut);
+  const end = vEsc + speedOf(laboratory);
+  const largestSpeedKmPerS = isFarCut ? Math.min(wind + REACH * largest, end) : end;
+  return { axes, form: 'ellipsoid', wind, cut: vEsc, isFarCut, largestSpeedKmPerS };
+}
+
+function requireMoving(windKmPerS: number): void {
+  if (!(windKmPerS > 0))
+    throw new DomainError('meanVelocity', windKmPerS, 'other than the laboratory’s for a component without dispersion');
 }
 
 function coldStream(speedKmPerS: number): VelocityDistribution {
-  if (!(speedKmPerS > 0))
-    throw new DomainError(
-      'meanVelocity',
-      speedKmPerS,
-      'other than the laboratory’s for a component without dispersion',
-    );
   return {
     largestSpeedKmPerS: speedKmPerS,
     kinksKmPerS: [],
@@ -230,11 +271,11 @@ function ellipsoid(
   vEsc: number,
   laboratory: GalacticVelocity,
   isFarCut: boolean,
+  largestSpeedKmPerS: number,
 ): VelocityDistribution {
   const wind = speedOf(velocityDifference(mean, laboratory));
   const reach = REACH * Math.max(...axes);
   const laboratorySpeed = speedOf(laboratory);
-  const largestSpeedKmPerS = isFarCut ? Math.min(wind + reach, vEsc + laboratorySpeed) : vEsc + laboratorySpeed;
   const smallest = isFarCut ? Math.max(0, wind - reach) : Math.max(0, laboratorySpeed - vEsc);
   const kink = vEsc - laboratorySpeed;
   const kinksKmPerS = !isFarCut && laboratorySpeed > 0 && kink > 0 ? [kink] : [];
@@ -259,13 +300,8 @@ function ellipsoid(
   const meanInverseSpeed = (v: number): number => {
     if (v >= largestSpeedKmPerS) return 0;
     if (v <= smallest) return eta[0] / norm;
-    let low = 0;
-    let high = ends.length - 1;
-    while (high - low > 1) {
-      const middle = (low + high) >> 1;
-      if (ends[middle] <= v) low = middle;
-      else high = middle;
-    }
+    const low = intervalOf(ends, v);
+    const high = low + 1;
     const width = ends[high] - ends[low];
     const t = (v - ends[low]) / width;
     const drop = eta[low] - eta[high];

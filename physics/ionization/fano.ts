@@ -10,9 +10,9 @@
  * N̄ = n + ½, which are the edges of the step model.
  */
 import { DomainError, requireNonNegative } from '../errors.ts';
+import { gaussianCells, normalBetween } from '../numeric/gaussian-cells.ts';
 import type { IonizationModel } from './ionization-model.ts';
 import { stepIonization } from './step.ts';
-import { gaussianCells, normalBetween } from '../numeric/gaussian-cells.ts';
 
 /** Crystals have F near 0.1, uncorrelated pairs 1. */
 const LARGEST_FANO_FACTOR = 10;

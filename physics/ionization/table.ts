@@ -3,6 +3,7 @@
  * and no charge is counted there; that charge, and what a row lacks of 1, is lost, and `lostFraction` says how much.
  */
 import { DomainError } from '../errors.ts';
+import { intervalOf } from '../numeric/interval.ts';
 import type { IonizationModel } from './ionization-model.ts';
 
 export interface IonizationTable {
@@ -99,18 +100,6 @@ export function tableIonization(table: IonizationTable): IonizationModel {
       return Math.max(0, 1 - sums[i] * (1 - t) - sums[i + 1] * t);
     },
   };
-}
-
-/** Index i of the interval [energies[i], energies[i + 1]) that holds an energy on the axis; the last one holds its upper end too. */
-function intervalOf(energies: Float64Array, energyEv: number): number {
-  let low = 0;
-  let high = energies.length - 1;
-  while (high - low > 1) {
-    const middle = (low + high) >> 1;
-    if (energies[middle] <= energyEv) low = middle;
-    else high = middle;
-  }
-  return low;
 }
 
 /** 1e-5 measured, see changingIntervalCuts. */

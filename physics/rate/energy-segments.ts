@@ -4,7 +4,7 @@
  * exact.
  */
 import type { CrystalTable } from '../crystal/crystal-table.ts';
-import { intervalOf } from './momentum-panel.ts';
+import { intervalOf } from '../numeric/interval.ts';
 
 export interface EnergySegments {
   /** Ends of the segments, eV, ascending; one more than there are segments. May be empty: nothing in the table above the gap. */

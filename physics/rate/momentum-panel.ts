@@ -11,6 +11,7 @@
 import type { CrystalTable } from '../crystal/crystal-table.ts';
 import { columnsOf } from '../crystal/crystal-table.ts';
 import { gaussLegendre } from '../numeric/gauss-legendre.ts';
+import { intervalOf } from '../numeric/interval.ts';
 
 export const NODES = 5;
 /** The nodes on [0, 1]; the first, third and fifth alone define the quadratic that the error estimate compares with. */
@@ -41,18 +42,6 @@ export const QUADRATIC_AT: readonly (readonly [number, number, number])[] = [UNI
 
 /** Three nodes integrate ℓ_k (degree 4) times a linear table exactly. */
 const RULE = gaussLegendre(3);
-
-/** Index i of the interval [axis[i], axis[i + 1]) that holds x; clamped to the axis. */
-export function intervalOf(axis: Float64Array, x: number): number {
-  let low = 0;
-  let high = axis.length - 1;
-  while (high - low > 1) {
-    const middle = (low + high) >> 1;
-    if (axis[middle] <= x) low = middle;
-    else high = middle;
-  }
-  return low;
-}
 
 /** Rows are added a few at a time: the moments are then read and written once for all of them. */
 const ROWS_AT_ONCE = 4;

@@ -32,19 +32,21 @@ export function shapeOf(header: CrystalHeader): { readonly rows: number; readonl
   return { rows: header.momentumKev.length - less, columns: header.energyEv.length - less };
 }
 
-/** The canonical content. All machines this runs on are little-endian. */
-export function contentOf(header: StoredHeader, values: Float64Array): Buffer {
+/** The canonical content, piece by piece: the values are not copied. All machines this runs on are little-endian. */
+export function contentOf(header: StoredHeader, values: Float64Array): readonly Buffer[] {
   const line = Buffer.from(`${canonicalize(header)}\n`, 'utf8');
-  return Buffer.concat([line, Buffer.from(values.buffer, values.byteOffset, values.byteLength)]);
+  return [line, Buffer.from(values.buffer, values.byteOffset, values.byteLength)];
 }
 
-export function idOf(content: Buffer): string {
-  return createHash('sha256').update(content).digest('hex');
+export function idOf(content: readonly Buffer[]): string {
+  const hash = createHash('sha256');
+  for (const piece of content) hash.update(piece);
+  return hash.digest('hex');
 }
 
 /** Reads canonical content back and checks it against its id; throws DamagedTableError. */
 export function recordOf(id: string, content: Buffer): TableRecord<StoredHeader> {
-  if (idOf(content) !== id) throw new DamagedTableError('content does not match its hash');
+  if (idOf([content]) !== id) throw new DamagedTableError('content does not match its hash');
   const { header, end } = headerOf(content);
   const { rows, columns } = 'axes' in header ? shapeOf(header) : { rows: 0, columns: 0 };
   if (content.length - end !== 8 * rows * columns) throw new DamagedTableError('content does not match its axes');
@@ -64,15 +66,27 @@ export function headerOf(content: Buffer): { readonly header: StoredHeader; read
   }
 }
 
+/** Tables made of headers: one stays with its header, and its axes, like its values, are shared with workers and not copied. */
+const tables = new WeakMap<CrystalHeader, CrystalTable>();
+
 /** The table as the calculation wants it: eV throughout. */
 export function tableOf(header: CrystalHeader, values: Float64Array): CrystalTable {
-  return {
+  const known = tables.get(header);
+  if (known) return known;
+  const shared = (numbers: readonly number[], factor: number): Float64Array => {
+    const array = new Float64Array(new SharedArrayBuffer(8 * numbers.length));
+    for (let i = 0; i < numbers.length; i++) array[i] = numbers[i] * factor;
+    return array;
+  };
+  const table: CrystalTable = {
     axes: header.axes,
     quantity: header.quantity,
-    momentumEv: Float64Array.from(header.momentumKev, (q) => q * 1e3),
-    energyEv: Float64Array.from(header.energyEv),
+    momentumEv: shared(header.momentumKev, 1e3),
+    energyEv: shared(header.energyEv, 1),
     values,
     cellMassEv: header.cellMassGev * 1e9,
     ...(header.cellVolumeAngstrom3 === undefined ? {} : { cellVolumeAngstrom3: header.cellVolumeAngstrom3 }),
   };
+  tables.set(header, table);
+  return table;
 }

@@ -51,7 +51,7 @@ describe('paths', () => {
     '/v1/rates/',
     '/v1/Rates',
     '/v1/crystals/silicon/value',
-    '/v1/reach',
+    '/v1/sweeps',
     '/metrics',
     '/docs/../package.json',
     '/docs/%2e%2e/%2e%2e/package.json',
