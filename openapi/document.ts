@@ -10,7 +10,7 @@ import {
 } from 'openapi3-ts/oas31';
 import { z } from 'zod';
 import { PROBLEM_TYPES } from '../service/problem.ts';
-import type { RouteDefinition } from '../service/route.ts';
+import type { MultipartForm, RouteDefinition } from '../service/route.ts';
 import { ROUTES } from '../service/routes/index.ts';
 import { BODIES } from '../service/schemas/bodies.ts';
 
@@ -57,11 +57,10 @@ const PROBLEM: SchemaObject = {
   },
 };
 
-const MATRIX: JsonSchema = {
-  type: 'array',
-  minItems: 2,
-  items: { type: 'array', minItems: 2, items: { type: 'number', minimum: 0 } },
-};
+function matrixOf(isPositive: boolean): JsonSchema {
+  const items = { type: 'number', ...(isPositive ? { minimum: 0 } : {}) };
+  return { type: 'array', minItems: 2, items: { type: 'array', minItems: 2, items } };
+}
 
 /** JSON Schemas of everything named, and of `schema` itself: components by their id, so that nothing is written twice. */
 function jsonSchema(schema: z.ZodType, io: 'input' | 'output', components: Map<string, JsonSchema>): SchemaObject {
@@ -70,7 +69,7 @@ function jsonSchema(schema: z.ZodType, io: 'input' | 'output', components: Map<s
     unrepresentable: 'any',
     target: 'draft-2020-12',
     override: ({ zodSchema, jsonSchema }) => {
-      if (zodSchema._zod.def.type === 'custom') Object.assign(jsonSchema, MATRIX);
+      if (zodSchema._zod.def.type === 'custom') Object.assign(jsonSchema, matrixOf(jsonSchema['id'] !== 'RealMatrix'));
     },
   }) as JsonSchema & { $defs?: Record<string, JsonSchema> };
   const { $schema: _schema, $defs = {}, ...own } = whole;
@@ -130,6 +129,24 @@ function responsesOf(route: RouteDefinition, components: Map<string, JsonSchema>
   return responses;
 }
 
+/** A form of a description in JSON and a file. */
+function formOf({ description, values }: MultipartForm, components: Map<string, JsonSchema>): MediaTypeObject {
+  return {
+    schema: {
+      type: 'object',
+      required: ['description', 'values'],
+      properties: {
+        description: jsonSchema(description, 'input', components),
+        values: { type: 'string', format: 'binary', description: values },
+      },
+    },
+    encoding: {
+      description: { contentType: 'application/json' },
+      values: { contentType: 'application/octet-stream, text/csv, application/gzip' },
+    },
+  };
+}
+
 function operationOf(route: RouteDefinition, components: Map<string, JsonSchema>): OperationObject {
   const parameters: ParameterObject[] = Object.entries(route.parameters ?? {}).map(([name, description]) => ({
     name,
@@ -154,6 +171,7 @@ function operationOf(route: RouteDefinition, components: Map<string, JsonSchema>
                 schema: jsonSchema(BODIES[route.body], 'input', components),
                 ...(route.examples ? { examples: { ...route.examples } } : {}),
               },
+              ...(route.multipart ? { 'multipart/form-data': formOf(route.multipart, components) } : {}),
             },
           },
         }

@@ -1,4 +1,4 @@
-/** Runs the service: `npm start`. The only file, beside the demo, that acts when it is loaded. */
+/** Runs the service: `npm start`. Beside the demo and the nightly job the only file that acts when it is loaded. */
 import type { Server } from 'node:http';
 import { serve } from '@hono/node-server';
 import { type Config, ConfigError, configOf } from './config.ts';

@@ -3,10 +3,11 @@
  * between, its points in the order of the masses.
  */
 import { bestPoint } from '../physics/reach/mass-grid.ts';
-import { haloOf } from './compute/halos.ts';
+
 import type { NoticeOut } from './compute/notices.ts';
 import { lightestMass, REFERENCE_CROSS_SECTION_CM2, type ReachPointAnswer } from './compute/reach-point-answer.ts';
 import type { ResolvedScenario } from './compute/resolved-scenario.ts';
+import { largestSpeedKmPerS } from './compute/velocity-distributions.ts';
 import { provenanceOf } from './provenance.ts';
 import { resolveScenario, type ScenarioToCompute } from './resolve-scenario.ts';
 import type { Dependencies } from './route.ts';
@@ -182,7 +183,7 @@ function noticesOf(
   );
   const unreached = points.filter(({ crossSection }) => crossSection === null).length;
   if (unreached > 0) {
-    const vMax = haloOf(scenario.halo).largestSpeedKmPerS;
+    const vMax = largestSpeedKmPerS(scenario.halo);
     const edge =
       lightest === undefined
         ? 'the table ends below the energy that feeds the window'

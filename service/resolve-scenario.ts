@@ -56,6 +56,9 @@ async function screenedAs(
   crystalAt: string,
 ): Promise<ResolvedCrystal> {
   const { electronsPerCell } = header;
+  if (header.quantity === 'dielectricFunction') {
+    return { id, screened: screening !== 'none', twin: 'none', electronsPerCell };
+  }
   if (header.screened) {
     if (screening === 'none') faults.push({ pointer: '/screening', detail: await whyScreened(id, header, tables) });
     return { id, screened: true, twin: 'none', electronsPerCell };

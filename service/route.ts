@@ -17,6 +17,8 @@ export interface Dependencies {
   readonly chargeTables: TableStore<ChargeHeader>;
   readonly compute: Compute;
   readonly version: string;
+  /** Where uploads lie while they are read. */
+  readonly uploadFolder: string;
   /** Whether the service can take work: its tables are loaded and it is not shutting down. */
   readonly isReady: () => boolean;
 }
@@ -25,12 +27,19 @@ export interface RouteResponse {
   readonly description: string;
   readonly schema?: z.ZodType;
   readonly mediaType?: string;
+  /** Other forms of the same answer, by Accept. */
+  readonly otherMediaTypes?: readonly string[];
   readonly headers?: Readonly<Record<string, string>>;
 }
 
 export interface Example {
   readonly summary: string;
   readonly value: unknown;
+}
+
+export interface MultipartForm {
+  readonly description: z.ZodType;
+  readonly values: string;
 }
 
 export interface HandlerInput<B extends BodyName | undefined> {
@@ -50,7 +59,11 @@ export interface RouteDefinition<B extends BodyName | undefined = BodyName | und
   readonly summary: string;
   readonly description?: string;
   readonly parameters?: Readonly<Record<string, string>>;
+  /** Of each parameter, for which the examples are answered. */
+  readonly parameterExamples?: Readonly<Record<string, string>>;
   readonly body?: B;
+  /** Another form of the body: a description in JSON and a file. Read by crystals/upload, described to callers here. */
+  readonly multipart?: MultipartForm;
   readonly examples?: Readonly<Record<string, Example>>;
   readonly responses: Readonly<Record<number, RouteResponse>>;
   readonly problems: readonly ProblemType[];

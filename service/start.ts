@@ -9,6 +9,7 @@ import { type BuiltIn, readCatalogue } from './crystals/built-in.ts';
 import { crystalLibrary } from './crystals/crystal-library.ts';
 import { directoryStore } from './crystals/directory-store.ts';
 import { sweepTemporaries } from './crystals/table-files.ts';
+import { sweepUploads } from './crystals/upload/upload-folder.ts';
 import type { DocsPage } from './docs-page.ts';
 import type { Log } from './log.ts';
 
@@ -38,7 +39,9 @@ export async function startService(config: Config, log: Log): Promise<Service> {
   const { version } = JSON.parse(fs.readFileSync(path.join(root, 'package.json'), 'utf8')) as { version: string };
   const folder = path.join(config.dataDir, 'crystals');
   const chargeFolder = path.join(config.dataDir, 'charge-tables');
+  const uploadFolder = path.join(config.dataDir, 'uploads');
   for (const stored of [folder, chargeFolder]) sweepTemporaries(stored, Date.now());
+  sweepUploads(uploadFolder, Date.now());
   const compute = computePool({ workers: config.workers, queue: config.queue });
   const builtIns: BuiltIn[] = [];
   // one after the other: all at once would overflow a short queue
@@ -55,6 +58,7 @@ export async function startService(config: Config, log: Log): Promise<Service> {
     chargeTables: directoryStore(chargeFolder, compute),
     compute,
     version,
+    uploadFolder,
     isReady: () => ready,
     log,
     deadlineSeconds: config.deadlineSeconds,

@@ -172,8 +172,8 @@ export function qualityReport(table: CrystalTable, claims: TableClaims, halo: Ve
   return {
     verdict: GRADES[Math.max(0, ...findings.map(({ grade }) => GRADES.indexOf(grade)))],
     findings,
-    momentum: coverage(table.axes, table.momentumEv),
-    energy: coverage(table.axes, table.energyEv),
+    momentum: axisCoverage(table.axes, table.momentumEv),
+    energy: axisCoverage(table.axes, table.energyEv),
     sumRule: claims.electronsPerCell === undefined ? undefined : rule,
     electronsFound: score.rows > 0 ? score.share * electrons : undefined,
     onsetEv: Number.isFinite(facts.onsetEv) ? facts.onsetEv : undefined,
@@ -183,7 +183,8 @@ export function qualityReport(table: CrystalTable, claims: TableClaims, halo: Ve
   };
 }
 
-function coverage(kind: AxisKind, axis: Float64Array): AxisCoverage {
+/** What an axis covers. */
+export function axisCoverage(kind: AxisKind, axis: Float64Array): AxisCoverage {
   const steps = axis.subarray(1).map((x, i) => x - axis[i]);
   const stepEv = { smallest: steps.reduce((a, b) => Math.min(a, b)), largest: steps.reduce((a, b) => Math.max(a, b)) };
   return { kind, count: axis.length, fromEv: axis[0], toEv: axis[axis.length - 1], stepEv };
@@ -223,7 +224,7 @@ function axisFindings({ table, claims, topEv }: Facts): Finding[] {
     },
   ];
   const pair = claims.energyPerPairEv;
-  const widest = coverage(table.axes, energyEv).stepEv.largest;
+  const widest = axisCoverage(table.axes, energyEv).stepEv.largest;
   if (pair !== undefined && widest > pair / 2) {
     const detail = `Energy steps of up to ${shown(widest)} eV are wide for electron bins of ${shown(pair)} eV: a bin has fewer than two.`;
     findings.push({ code: 'axes', grade: 'look', detail });
@@ -292,12 +293,8 @@ const TOP_TENTH = 0.1;
 
 /** Why a share is low. Strength just below the table's end speaks for strength above it: a shell that opens there. */
 function whyLow({ table, rule, electrons, score, topEv }: Facts): string {
-  const columns = columnsOf(table);
-  const isTop = (j: number): boolean => table.energyEv[j] >= topEv * (1 - TOP_TENTH);
-  const top = energyMoments(
-    table,
-    table.values.map((value, at) => (isTop(at % columns) ? value : 0)),
-  );
+  const first = table.energyEv.findIndex((energy) => energy >= topEv * (1 - TOP_TENTH));
+  const top = energyMoments(table, table.values, first);
   const all = energyMoments(table);
   const parts = Array.from(all.subarray(0, rule.share.length), (moment, i) => (moment > 0 ? top[i] / moment : 0));
   const part = median(parts.filter((_, i) => rule.momentumEv[i] <= rule.nearOne.toEv));

@@ -20,14 +20,17 @@ export interface SumRule {
   readonly nearOne: { readonly fromEv: number; readonly toEv: number };
 }
 
-/** ∫ E g(E) dE of each row of a matrix of a table's shape, in its unit times eV²: exact, constant in cells or linear between points. */
-export function energyMoments(table: CrystalTable, values = table.values): Float64Array {
+/**
+ * ∫ E g(E) dE of each row of a matrix of a table's shape, in its unit times eV²: exact, constant in cells or linear between points.
+ * From column `from` on, as if the numbers before it were 0.
+ */
+export function energyMoments(table: CrystalTable, values = table.values, from = 0): Float64Array {
   const weights = energyWeights(table);
   const columns = weights.length;
   const moments = new Float64Array(rowsOf(table));
   for (let i = 0; i < moments.length; i++) {
     let sum = 0;
-    for (let j = 0; j < columns; j++) sum += weights[j] * values[i * columns + j];
+    for (let j = from; j < columns; j++) sum += weights[j] * values[i * columns + j];
     moments[i] = sum;
   }
   return moments;

@@ -35,6 +35,10 @@ export interface GaussianComponent {
 
 /** Largest ratio of two dispersions: the angular integral's cost grows with its square. */
 export const LARGEST_AXIS_RATIO = 10;
+/** Most dispersions that the component's range of speeds may be wide: tables of η have sections of a few of them. */
+const WIDEST_RANGE = 5000;
+/** Smallest dispersion that is not 0, as a share of the largest speed: rounding swallows less. */
+const SMALLEST_SHARE = 1e-9;
 /** Gaussian tails are dropped from this many dispersions on: e^{−32} = 1e-14. */
 const REACH = 8;
 /** A cut this many dispersions from the mean takes less than 1e-12 of the component with it. */
@@ -47,7 +51,8 @@ const FAR_CUT = 7.5;
  * for axes within a factor 3, 100 ms for a factor 10; a closed form microseconds.
  *
  * @throws DomainError for a dispersion that is negative, one axis at 0 and another not, or axes further apart than
- *   LARGEST_AXIS_RATIO; a mean velocity at or above the escape speed; a cold stream at rest in the laboratory (η is infinite)
+ *   LARGEST_AXIS_RATIO, or one far narrower than the speeds; a mean velocity at or above the escape speed; a cold stream
+ *   at rest in the laboratory (η is infinite)
  */
 export function gaussianComponent(component: GaussianComponent, laboratory: GalacticVelocity): VelocityDistribution {
   const outline = outlineOf(component, laboratory);
@@ -116,13 +121,13 @@ function outlineOf(component: GaussianComponent, laboratory: GalacticVelocity): 
     requireMoving(wind);
     return { axes, form: 'cold', wind, cut: 0, isFarCut, largestSpeedKmPerS: wind };
   }
-  if (smallest === largest && (meanSpeed === 0 || isFarCut)) {
-    const cut = meanSpeed === 0 ? vEsc : Math.min(vEsc - meanSpeed, REACH * largest);
-    return { axes, form: 'closed', wind, cut, isFarCut, largestSpeedKmPerS: cut + wind };
-  }
-  const end = vEsc + speedOf(laboratory);
-  const largestSpeedKmPerS = isFarCut ? Math.min(wind + REACH * largest, end) : end;
-  return { axes, form: 'ellipsoid', wind, cut: vEsc, isFarCut, largestSpeedKmPerS };
+  const isClosed = smallest === largest && (meanSpeed === 0 || isFarCut);
+  const cut = isClosed && meanSpeed > 0 ? Math.min(vEsc - meanSpeed, REACH * largest) : vEsc;
+  const largestSpeedKmPerS = isClosed ? cut + wind : Math.min(wind + REACH * largest, vEsc + speedOf(laboratory));
+  const range = Math.min(largestSpeedKmPerS, isClosed ? 2 * cut : 2 * REACH * largest);
+  if (range > WIDEST_RANGE * smallest || smallest < SMALLEST_SHARE * largestSpeedKmPerS)
+    throw new DomainError('dispersion', axes, '0, or not so far below the speeds of the component');
+  return { axes, form: isClosed ? 'closed' : 'ellipsoid', wind, cut, isFarCut, largestSpeedKmPerS };
 }
 
 function requireMoving(windKmPerS: number): void {
@@ -276,9 +281,9 @@ function ellipsoid(
   const wind = speedOf(velocityDifference(mean, laboratory));
   const reach = REACH * Math.max(...axes);
   const laboratorySpeed = speedOf(laboratory);
-  const smallest = isFarCut ? Math.max(0, wind - reach) : Math.max(0, laboratorySpeed - vEsc);
+  const smallest = Math.max(0, wind - reach, isFarCut ? 0 : laboratorySpeed - vEsc);
   const kink = vEsc - laboratorySpeed;
-  const kinksKmPerS = !isFarCut && laboratorySpeed > 0 && kink > 0 ? [kink] : [];
+  const kinksKmPerS = !isFarCut && laboratorySpeed > 0 && kink > smallest && kink < largestSpeedKmPerS ? [kink] : [];
   const widest = (w: number): number =>
     (PANEL_SHARE * Math.min(...axes)) / Math.max(1, Math.abs(w - wind) / (2 * Math.max(...axes)));
   const ends = panelEnds(smallest, kinksKmPerS, largestSpeedKmPerS, widest);

@@ -1,21 +1,23 @@
 /** Halos by their parameters, so that jobs which share one share its tabulated tail. */
-import { type StandardHaloParameters, standardHalo } from '../../physics/halo/standard-halo.ts';
 import type { VelocityDistribution } from '../../physics/halo/velocity-distribution.ts';
+import type { HaloIn } from '../schemas/halo.ts';
+import { distributionOf } from './velocity-distributions.ts';
 
 const MOST_HALOS = 32;
 const halos = new Map<string, VelocityDistribution>(); // least recently used first
 
-export function haloOf({
-  circularSpeedKmPerS,
-  escapeSpeedKmPerS,
-  laboratorySpeedKmPerS,
-  cutoff,
-}: StandardHaloParameters): VelocityDistribution {
-  const key = [circularSpeedKmPerS, escapeSpeedKmPerS, laboratorySpeedKmPerS, cutoff].join(' ');
-  const halo =
-    halos.get(key) ?? standardHalo({ circularSpeedKmPerS, escapeSpeedKmPerS, laboratorySpeedKmPerS, cutoff });
+export function haloOf(parameters: HaloIn): VelocityDistribution {
+  const key = keyOf(parameters);
+  const halo = halos.get(key) ?? distributionOf(parameters);
   halos.delete(key);
   halos.set(key, halo);
   if (halos.size > MOST_HALOS) halos.delete(halos.keys().next().value!);
   return halo;
+}
+
+/** All that the distribution depends on. */
+function keyOf(halo: HaloIn): string {
+  if (halo.model === undefined)
+    return [halo.circularSpeedKmPerS, halo.escapeSpeedKmPerS, halo.laboratorySpeedKmPerS, halo.cutoff].join(' ');
+  return JSON.stringify({ ...halo, localDensityGevPerCm3: undefined });
 }

@@ -5,6 +5,7 @@
  */
 import type { CrystalTable } from '../../physics/crystal/crystal-table.ts';
 import { screenedTwin } from '../../physics/crystal/dielectric.ts';
+import { type GivenTable, lossTable } from '../crystals/given-table.ts';
 import type { ResolvedCrystal } from './resolved-scenario.ts';
 
 const MOST_TABLES = 16;
@@ -13,8 +14,10 @@ const MOST_TWINS = 4;
 const tables = new Map<string, CrystalTable>(); // least recently used first
 const twins = new Map<string, CrystalTable>();
 
-/** The table that a scenario's rates are made of: `table` as it was given, or its screened twin. */
-export function keptTable({ id, twin, electronsPerCell }: ResolvedCrystal, table: CrystalTable): CrystalTable {
+/** The table that a scenario's rates are made of: `table` as it was given, its screened twin, or either half of a dielectric function. */
+export function keptTable({ id, screened, twin, electronsPerCell }: ResolvedCrystal, table: GivenTable): CrystalTable {
+  const { realDielectric } = table;
+  if (realDielectric && screened) return kept(twins, MOST_TWINS, id, () => lossTable(table, realDielectric));
   const given = kept(tables, MOST_TABLES, id, () => table);
   return twin === 'used' ? kept(twins, MOST_TWINS, id, () => screenedTwin(given, electronsPerCell)) : given;
 }

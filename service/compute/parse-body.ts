@@ -46,7 +46,8 @@ export function jsonOf(bytes: Uint8Array, what = 'body'): unknown {
   } catch {
     throw new Problem('malformed-body', `The ${what} is not UTF-8.`);
   }
-  if (nestingOf(bytes) > DEEPEST) throw new Problem('malformed-body', `The ${what} nests deeper than ${DEEPEST} levels.`);
+  if (nestingOf(bytes) > DEEPEST)
+    throw new Problem('malformed-body', `The ${what} nests deeper than ${DEEPEST} levels.`);
   try {
     return JSON.parse(text);
   } catch (error) {

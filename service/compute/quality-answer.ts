@@ -1,7 +1,10 @@
 /** The quality report of a table as it goes out: runs in a worker thread. */
-import { type AxisCoverage, type QualityReport, qualityReport } from '../../physics/crystal/quality.ts';
+import { type CrystalTable, columnsOf, rowsOf } from '../../physics/crystal/crystal-table.ts';
+import { type AxisCoverage, axisCoverage, type QualityReport, qualityReport } from '../../physics/crystal/quality.ts';
+import { coarserEdges, regridded } from '../../physics/crystal/regrid.ts';
 import { KINDS, quantityOf } from '../../physics/quantity/quantity.ts';
 import { tableOf } from '../crystals/crystal-record.ts';
+import { lossTable } from '../crystals/given-table.ts';
 import type { CrystalHeader } from '../schemas/crystal.ts';
 import { DEFAULT_HALO } from '../schemas/halo.ts';
 import type { Quality } from '../schemas/quality.ts';
@@ -17,8 +20,11 @@ export interface QualityJob {
 export function qualityAnswer({ header, values, momentumUnit }: QualityJob): Quality {
   const { screened, electronsPerCell, bandGapEv, energyPerPairEv } = header;
   const unit = momentumUnit === undefined ? undefined : knownUnit(momentumUnit);
+  const given = tableOf(header, values);
+  const whole = given.realDielectric ? lossTable(given, given.realDielectric) : given;
+  const looked = overviewOf(whole, bandGapEv);
   const report = qualityReport(
-    tableOf(header, values),
+    looked,
     {
       screened,
       electronsPerCell,
@@ -30,10 +36,13 @@ export function qualityAnswer({ header, values, momentumUnit }: QualityJob): Qua
   );
   return {
     verdict: report.verdict,
-    findings: report.findings.map(({ code, grade, detail }) => ({ code, grade, detail: tellable(detail) })),
+    findings: [
+      ...report.findings.map(({ code, grade, detail }) => ({ code, grade, detail: tellable(detail) })),
+      ...overviewFindings(whole, looked),
+    ],
     coverage: {
-      momentum: { unit: 'keV', ...coverageOut(report.momentum, 1e-3) },
-      energy: { unit: 'eV', ...coverageOut(report.energy, 1) },
+      momentum: { unit: 'keV', ...coverageOut(axisCoverage(whole.axes, whole.momentumEv), 1e-3) },
+      energy: { unit: 'eV', ...coverageOut(axisCoverage(whole.axes, whole.energyEv), 1) },
     },
     sumRule: sumRuleOut(report),
     onset: report.onsetEv === undefined ? null : { value: report.onsetEv, unit: 'eV' },
@@ -47,6 +56,54 @@ export function qualityAnswer({ header, values, momentumUnit }: QualityJob): Qua
       lowerMomentumShare: finiteOr(lowerMomentumShare) ?? 0,
     })),
   };
+}
+
+/** Values up to which a report looks at every one: it costs a tenth of a second there, and its working memory grows with them. */
+const MOST_VALUES = 400_000;
+const OVERVIEW = { rows: 400, columns: 300 };
+
+/** The table, or of a very large one an overview: neighbouring cells merged with their integrals kept, or of samples some. */
+function overviewOf(table: CrystalTable, bandGapEv: number | undefined): CrystalTable {
+  if (table.values.length <= MOST_VALUES) return table;
+  if (table.axes === 'edges') {
+    const momenta = coarserEdges(table.momentumEv, OVERVIEW.rows);
+    return regridded(
+      table,
+      momenta,
+      coarserEdges(table.energyEv, OVERVIEW.columns, bandGapEv === undefined ? [] : [bandGapEv]),
+    );
+  }
+  const [rows, columns] = [someOf(rowsOf(table), OVERVIEW.rows), someOf(columnsOf(table), OVERVIEW.columns)];
+  const values = Float64Array.from({ length: rows.length * columns.length }, (_, k) => {
+    const [i, j] = [rows[Math.floor(k / columns.length)], columns[k % columns.length]];
+    return table.values[i * columnsOf(table) + j];
+  });
+  return {
+    ...table,
+    momentumEv: Float64Array.from(rows, (i) => table.momentumEv[i]),
+    energyEv: Float64Array.from(columns, (j) => table.energyEv[j]),
+    values,
+  };
+}
+
+/** At most `most` indices of `count`, evenly spread, the first and the last among them. */
+function someOf(count: number, most: number): number[] {
+  const step = Math.ceil((count - 1) / (most - 1));
+  const some = Array.from({ length: Math.ceil((count - 1) / step) }, (_, k) => k * step);
+  return [...some, count - 1];
+}
+
+function overviewFindings(whole: CrystalTable, looked: CrystalTable): Quality['findings'] {
+  if (looked === whole) return [];
+  const [from, to] = [whole, looked].map((table) => `${rowsOf(table)} × ${columnsOf(table)}`);
+  const how = whole.axes === 'edges' ? 'cells merged, their integrals kept' : 'samples taken evenly';
+  return [
+    {
+      code: 'overview',
+      grade: 'fine',
+      detail: `The table is very large (${from}); this report looked at ${to} of it: ${how}. Roughness is that of these.`,
+    },
+  ];
 }
 
 /** Names the report knows, and how they are written in a request. */

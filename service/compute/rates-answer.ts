@@ -3,15 +3,20 @@ import type { CrystalTable } from '../../physics/crystal/crystal-table.ts';
 import type { ReadoutResponse } from '../../physics/detector/readout.ts';
 import type { Background } from '../../physics/exposure/needed-exposure.ts';
 import { type CrystalRate, crystalRate, type Estimate } from '../../physics/rate/crystal-rate.ts';
-import { invalidInput, type Problem } from '../problem.ts';
 import type { RatesAnswer } from '../schemas/rates.ts';
+import type { UncertaintyIn } from '../schemas/uncertainty.ts';
 import { ionizationModelOf, measuredBackgrounds, measuredSignal, readoutOf } from './detector-view.ts';
 import { rateOut, sumOf } from './estimates.ts';
 import { exposureAnswer } from './exposure-answer.ts';
+import { haloFacts } from './halo-facts.ts';
 import { haloOf } from './halos.ts';
-import { keptTable } from './kept-tables.ts';
 import { rateNotices } from './notices.ts';
 import type { ResolvedScenario } from './resolved-scenario.ts';
+import { responseOut } from './response-answer.ts';
+import { responseScenarioOf } from './response-scenario.ts';
+import { uncertaintyOut } from './uncertainty-answer.ts';
+import { unrepresentable } from './unrepresentable.ts';
+import { isBeyondDefault } from './velocity-distributions.ts';
 
 export interface RatesJob {
   readonly scenario: ResolvedScenario;
@@ -19,28 +24,20 @@ export interface RatesJob {
 }
 
 /** Rates per true electron up to `lastElectron`, which noise may need beyond those that are shown. */
-export function rateOf({ scenario, table }: RatesJob, lastElectron: number): CrystalRate {
-  const { darkMatter, halo, ionization } = scenario;
-  const rate = crystalRate(
-    {
-      massEv: darkMatter.massMev * 1e6,
-      crossSectionCm2: darkMatter.referenceCrossSectionCm2,
-      mediator: darkMatter.mediator,
-      splittingEv: darkMatter.massSplittingEv,
-      localDensityGevPerCm3: halo.localDensityGevPerCm3,
-      halo: haloOf(halo),
-      table: keptTable(scenario.crystal, table),
-      ionization: ionizationModelOf(ionization),
-      energyPerPairEv: ionization.energyPerPairEv,
-      maxElectrons: lastElectron,
-    },
-    scenario.spectrum,
-  );
+export function rateOf(job: RatesJob, lastElectron: number): CrystalRate {
+  const { halo, spectrum } = job.scenario;
+  const rate = crystalRate({ ...responseScenarioOf(job, lastElectron), halo: haloOf(halo) }, spectrum);
   refuseUnrepresentable(rate);
   return rate;
 }
 
-export function ratesAnswer(job: RatesJob): Omit<RatesAnswer, 'provenance'> {
+/** What else is asked of the scenario; absent where it is not. */
+export interface RatesExtras {
+  readonly response?: true;
+  readonly uncertainty?: UncertaintyIn;
+}
+
+export function ratesAnswer(job: RatesJob & RatesExtras): Omit<RatesAnswer, 'provenance'> {
   const { scenario } = job;
   const response = readoutOf(scenario);
   const rate = rateOf(job, response.lastElectron);
@@ -63,6 +60,7 @@ export function ratesAnswer(job: RatesJob): Omit<RatesAnswer, 'provenance'> {
       ? { measured: measuredOut(scenario, signal, backgrounds, response) }
       : {}),
     ...(exposure ? { exposure } : {}),
+    ...(isBeyondDefault(scenario.halo) ? { halo: haloFacts(scenario.halo) } : {}),
     ...(rate.spectrum
       ? {
           spectrum: {
@@ -75,6 +73,8 @@ export function ratesAnswer(job: RatesJob): Omit<RatesAnswer, 'provenance'> {
           },
         }
       : {}),
+    ...(job.response ? { response: responseOut(job) } : {}),
+    ...(job.uncertainty ? { uncertainty: uncertaintyOut(job, job.uncertainty) } : {}),
     notices,
   };
 }
@@ -102,7 +102,6 @@ function measuredOut(
   };
 }
 
-/** Inputs may each be sensible and their product beyond what a number holds; that is said, not answered with null. */
 function refuseUnrepresentable(rate: CrystalRate): void {
   const numbers = [rate.total, rate.overflow, rate.lost, ...rate.bins.map((bin) => bin.rate)].flatMap((r) => [
     r.value,
@@ -113,10 +112,4 @@ function refuseUnrepresentable(rate: CrystalRate): void {
   const ends = [rate.largestEnergyEv, rate.smallestMassEv, ...rate.bins.map((bin) => bin.toEv)];
   if (rates && ends.every(Number.isFinite)) return;
   throw unrepresentable();
-}
-
-export function unrepresentable(): Problem {
-  return invalidInput([
-    { pointer: '', detail: 'the numbers are so large or so small that the rate cannot be represented' },
-  ]);
 }

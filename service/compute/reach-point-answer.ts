@@ -5,10 +5,11 @@ import { type ReachPoint, reachPoints } from '../../physics/reach/reach-point.ts
 import type { GoalIn } from '../schemas/goal.ts';
 import { ionizationModelOf, measuredBackgrounds, measuredSignal, readoutOf } from './detector-view.ts';
 import { windowOf, windowRates } from './exposure-answer.ts';
-import { haloOf } from './halos.ts';
+
 import { type NoticeOut, rateNotices } from './notices.ts';
 import { rateOf } from './rates-answer.ts';
 import type { ResolvedScenario } from './resolved-scenario.ts';
+import { largestSpeedKmPerS } from './velocity-distributions.ts';
 
 export interface ReachPointJob {
   /** Its mass is the point's, its cross section a reference that drops out. */
@@ -71,7 +72,7 @@ function newSearch(scenario: ResolvedScenario, goal: GoalIn, exposureKgYr: numbe
 export function lightestMass(scenario: ResolvedScenario, table: CrystalTable, goal: GoalIn): number | undefined {
   const energy = lowestEnergy(scenario, table, goal);
   if (energy === undefined) return undefined;
-  const vMax = haloOf(scenario.halo).largestSpeedKmPerS;
+  const vMax = largestSpeedKmPerS(scenario.halo);
   return lightestMassMev(energy, scenario.darkMatter.massSplittingEv, vMax);
 }
 

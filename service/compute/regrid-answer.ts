@@ -1,6 +1,6 @@
 /** A table with fewer cells, whose integrals over cells are those of the table it was made from: runs in a worker thread. */
 import { cellsOf, coarserEdges, regridded } from '../../physics/crystal/regrid.ts';
-import { contentOf, type CrystalRecord, idOf, tableOf } from '../crystals/crystal-record.ts';
+import { type CrystalRecord, contentOf, idOf, tableOf } from '../crystals/crystal-record.ts';
 import type { CrystalHeader } from '../schemas/crystal.ts';
 import type { CrystalRegrid } from '../schemas/crystal-regrids.ts';
 
@@ -23,7 +23,11 @@ export function regridAnswer({ record, cells }: RegridJob): CrystalRecord {
   const energyEv = coarser(header.energyEv, cells.energyCells, gap > 0 ? [gap] : []);
   const isSame = momentumKev.length === header.momentumKev.length && energyEv.length === header.energyEv.length;
   if (isSame && header.axes === 'edges') return record;
-  const coarse = regridded(fine, momentumKev.map((q) => q * 1e3), energyEv);
+  const coarse = regridded(
+    fine,
+    momentumKev.map((q) => q * 1e3),
+    energyEv,
+  );
   const values = new Float64Array(new SharedArrayBuffer(8 * coarse.values.length));
   values.set(coarse.values);
   const fresh: CrystalHeader = {

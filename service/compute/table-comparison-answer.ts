@@ -2,14 +2,14 @@
 import type { CrystalTable } from '../../physics/crystal/crystal-table.ts';
 import { type Block, compareTables, type TableComparison } from '../../physics/crystal/table-comparison.ts';
 import type { CrystalComparisonAnswer } from '../schemas/crystal-comparisons.ts';
-import { ionizationModelOf } from './detector-view.ts';
 import { rateOut, sumOf } from './estimates.ts';
 import { haloOf } from './halos.ts';
 import { keptTable } from './kept-tables.ts';
 import { type NoticeOut, PLANNING_ESTIMATE } from './notices.ts';
-import { unrepresentable } from './rates-answer.ts';
 import type { ResolvedCrystal, ResolvedScenario } from './resolved-scenario.ts';
+import { responseScenarioOf } from './response-scenario.ts';
 import { screeningNotices } from './screening-notices.ts';
+import { unrepresentable } from './unrepresentable.ts';
 
 export interface TableComparisonJob {
   /** With the baseline's crystal; gap and pair energy hold for both. */
@@ -23,22 +23,9 @@ export interface TableComparisonJob {
 
 export function tableComparisonAnswer(job: TableComparisonJob): Omit<CrystalComparisonAnswer, 'provenance'> {
   const { scenario, baseline, otherCrystal, candidate } = job;
-  const { darkMatter, halo, ionization, crystal } = scenario;
-  const comparison = compareTables(
-    {
-      massEv: darkMatter.massMev * 1e6,
-      crossSectionCm2: darkMatter.referenceCrossSectionCm2,
-      mediator: darkMatter.mediator,
-      splittingEv: darkMatter.massSplittingEv,
-      localDensityGevPerCm3: halo.localDensityGevPerCm3,
-      halo: haloOf(halo),
-      ionization: ionizationModelOf(ionization),
-      energyPerPairEv: ionization.energyPerPairEv,
-      maxElectrons: ionization.maxElectrons,
-    },
-    keptTable(crystal, baseline),
-    keptTable(otherCrystal, candidate),
-  );
+  const { halo, ionization, crystal } = scenario;
+  const { table, ...rest } = responseScenarioOf({ scenario, table: baseline }, ionization.maxElectrons);
+  const comparison = compareTables({ ...rest, halo: haloOf(halo) }, table, keptTable(otherCrystal, candidate));
   refuseUnrepresentable(comparison);
   const total = {
     baseline: sumOf(comparison.bins.map((bin) => bin.baseline)),

@@ -6,9 +6,10 @@ import type { StoredHeader, TableRecord } from '../crystals/crystal-record.ts';
 import { listTables, readHeader, readTable, removeTable, writeTable } from '../crystals/table-files.ts';
 import { readUpload, type UploadJob } from '../crystals/upload/read-upload.ts';
 import { type MeanInverseSpeedJob, meanInverseSpeedAnswer } from './mean-inverse-speed-answer.ts';
+import { type ModulationJob, modulationAnswer } from './modulation-answer.ts';
 import { type ParseJob, parseBody } from './parse-body.ts';
 import { type QualityJob, qualityAnswer } from './quality-answer.ts';
-import { type RatesJob, ratesAnswer } from './rates-answer.ts';
+import { type RatesExtras, type RatesJob, ratesAnswer } from './rates-answer.ts';
 import { type ReachPointJob, reachPointAnswer } from './reach-point-answer.ts';
 import { type RegridJob, regridAnswer } from './regrid-answer.ts';
 import { type TableComparisonJob, tableComparisonAnswer } from './table-comparison-answer.ts';
@@ -20,10 +21,11 @@ interface InFolder {
 }
 
 export const TASKS = {
-  rates: (job: RatesJob) => ratesAnswer(job),
+  rates: (job: RatesJob & RatesExtras) => ratesAnswer(job),
   reachPoint: (job: ReachPointJob) => reachPointAnswer(job),
   tradeOffs: (job: TradeOffsJob) => tradeOffsAnswer(job),
   tableComparison: (job: TableComparisonJob) => tableComparisonAnswer(job),
+  modulation: (job: ModulationJob) => modulationAnswer(job),
   meanInverseSpeed: (job: MeanInverseSpeedJob) => meanInverseSpeedAnswer(job),
   parseBody: (job: ParseJob) => parseBody(job),
   readUpload: (job: UploadJob) => readUpload(job),

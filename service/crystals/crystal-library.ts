@@ -114,7 +114,10 @@ export function crystalLibrary(
       return [...builtIns.map(({ record }) => record), ...stored].map(({ id, header }) => describe(id, header));
     },
     async add(record) {
-      return byId.has(record.id) ? { created: false } : store.put(record);
+      if (byId.has(record.id)) return { created: false };
+      const stored = await store.put(record);
+      keep(record); // what was stored a moment ago is not read back
+      return stored;
     },
     async remove(name) {
       const id = aliases.get(name) ?? name;

@@ -5,9 +5,9 @@
  */
 import { createHash } from 'node:crypto';
 import canonicalize from 'canonicalize';
-import type { CrystalTable } from '../../physics/crystal/crystal-table.ts';
 import type { ChargeHeader } from '../schemas/charge-table.ts';
 import type { CrystalHeader } from '../schemas/crystal.ts';
+import type { GivenTable } from './given-table.ts';
 
 /** What is stored: a crystal's header with its values, or a charge table, which is all header. */
 export type StoredHeader = CrystalHeader | ChargeHeader;
@@ -32,6 +32,11 @@ export function shapeOf(header: CrystalHeader): { readonly rows: number; readonl
   return { rows: header.momentumKev.length - less, columns: header.energyEv.length - less };
 }
 
+/** How many matrices the values are: the real and then the imaginary part of a dielectric function, else one. */
+export function matricesOf({ quantity }: CrystalHeader): number {
+  return quantity === 'dielectricFunction' ? 2 : 1;
+}
+
 /** The canonical content, piece by piece: the values are not copied. All machines this runs on are little-endian. */
 export function contentOf(header: StoredHeader, values: Float64Array): readonly Buffer[] {
   const line = Buffer.from(`${canonicalize(header)}\n`, 'utf8');
@@ -49,8 +54,9 @@ export function recordOf(id: string, content: Buffer): TableRecord<StoredHeader>
   if (idOf([content]) !== id) throw new DamagedTableError('content does not match its hash');
   const { header, end } = headerOf(content);
   const { rows, columns } = 'axes' in header ? shapeOf(header) : { rows: 0, columns: 0 };
-  if (content.length - end !== 8 * rows * columns) throw new DamagedTableError('content does not match its axes');
-  const shared = new SharedArrayBuffer(8 * rows * columns);
+  const bytes = 'axes' in header ? 8 * matricesOf(header) * rows * columns : 0;
+  if (content.length - end !== bytes) throw new DamagedTableError('content does not match its axes');
+  const shared = new SharedArrayBuffer(bytes);
   new Uint8Array(shared).set(content.subarray(end));
   return { id, header, values: new Float64Array(shared) };
 }
@@ -66,11 +72,24 @@ export function headerOf(content: Buffer): { readonly header: StoredHeader; read
   }
 }
 
+function partsOf(
+  { quantity }: CrystalHeader,
+  values: Float64Array,
+): Pick<GivenTable, 'quantity' | 'values' | 'realDielectric'> {
+  if (quantity !== 'dielectricFunction') return { quantity, values };
+  const half = values.length / 2;
+  return {
+    quantity: 'imaginaryDielectric',
+    values: values.subarray(half),
+    realDielectric: values.subarray(0, half),
+  };
+}
+
 /** Tables made of headers: one stays with its header, and its axes, like its values, are shared with workers and not copied. */
-const tables = new WeakMap<CrystalHeader, CrystalTable>();
+const tables = new WeakMap<CrystalHeader, GivenTable>();
 
 /** The table as the calculation wants it: eV throughout. */
-export function tableOf(header: CrystalHeader, values: Float64Array): CrystalTable {
+export function tableOf(header: CrystalHeader, values: Float64Array): GivenTable {
   const known = tables.get(header);
   if (known) return known;
   const shared = (numbers: readonly number[], factor: number): Float64Array => {
@@ -78,12 +97,11 @@ export function tableOf(header: CrystalHeader, values: Float64Array): CrystalTab
     for (let i = 0; i < numbers.length; i++) array[i] = numbers[i] * factor;
     return array;
   };
-  const table: CrystalTable = {
+  const table: GivenTable = {
     axes: header.axes,
-    quantity: header.quantity,
+    ...partsOf(header, values),
     momentumEv: shared(header.momentumKev, 1e3),
     energyEv: shared(header.energyEv, 1),
-    values,
     cellMassEv: header.cellMassGev * 1e9,
     ...(header.cellVolumeAngstrom3 === undefined ? {} : { cellVolumeAngstrom3: header.cellVolumeAngstrom3 }),
   };

@@ -18,13 +18,20 @@ export interface PackedMatrix {
 
 export const MATRIX_FIELDS = ['formFactorSquared', 'lossFunction'] as const;
 
+/** The two matrices of a dielectric function, and whether their numbers may be negative. */
+export const DIELECTRIC_PARTS = [
+  ['real', true],
+  ['imaginary', false],
+] as const;
+
 export function isPackedMatrix(value: unknown): value is PackedMatrix {
   return typeof value === 'object' && value !== null && (value as { packed?: unknown }).packed === true;
 }
 
-/** Packs an array of rows of numbers, each finite and at least 0; collects what is not. Anything else comes back as it is. */
-export function packMatrix(rows: unknown): unknown {
+/** Packs an array of rows of numbers, each finite and (if so asked) at least 0; collects what is not. Anything else comes back as it is. */
+export function packMatrix(rows: unknown, mayBeNegative = false): unknown {
   if (!Array.isArray(rows)) return isPackedMatrix(rows) ? { packed: false } : rows;
+  const form = mayBeNegative ? 'must be a finite number' : 'must be a number of at least 0';
   const faults: { pointer: string; detail: string }[] = [];
   let faultCount = 0;
   const fault = (pointer: string, detail: string): void => {
@@ -42,10 +49,9 @@ export function packMatrix(rows: unknown): unknown {
     }
     for (let j = 0; j < row.length; j++, at++) {
       const value: unknown = row[j];
-      if (typeof value !== 'number') fault(`/${i}/${j}`, `must be a number of at least 0; got ${kindOf(value)}`);
-      else if (!(value < Infinity))
-        fault(`/${i}/${j}`, 'must be a number of at least 0; got one beyond all that can be held');
-      else if (!(value >= 0)) fault(`/${i}/${j}`, `must be a number of at least 0; got ${value}`);
+      if (typeof value !== 'number') fault(`/${i}/${j}`, `${form}; got ${kindOf(value)}`);
+      else if (!(Math.abs(value) < Infinity)) fault(`/${i}/${j}`, `${form}; got one beyond all that can be held`);
+      else if (!mayBeNegative && !(value >= 0)) fault(`/${i}/${j}`, `${form}; got ${value}`);
       else values[at] = value + 0; // −0 is 0, or the same table would have two ids
     }
   });
@@ -57,13 +63,20 @@ function kindOf(value: unknown): string {
   return Array.isArray(value) ? 'a list' : `a ${typeof value}`;
 }
 
+function packParts(parts: Record<string, unknown>): void {
+  for (const [part, mayBeNegative] of DIELECTRIC_PARTS)
+    if (Object.hasOwn(parts, part)) parts[part] = packMatrix(parts[part], mayBeNegative);
+}
+
 /** Replaces every matrix in a request body (a table, or a table inline in a scenario) by its packed form, in place. */
 export function packTables(body: unknown): void {
   for (const { scenario } of scenarioPlaces(body)) {
-    for (const holder of [scenario, scenario['crystal']]) {
+    for (const holder of [scenario, scenario['crystal']].flat()) {
       if (typeof holder !== 'object' || holder === null) continue;
       const table = holder as Record<string, unknown>;
       for (const field of MATRIX_FIELDS) if (Object.hasOwn(table, field)) table[field] = packMatrix(table[field]);
+      const parts = Object.hasOwn(table, 'dielectricFunction') ? table['dielectricFunction'] : undefined;
+      if (typeof parts === 'object' && parts !== null) packParts(parts as Record<string, unknown>);
     }
   }
 }

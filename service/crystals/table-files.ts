@@ -12,6 +12,8 @@ const ENDING = '.table';
 const TEMPORARY = '.part';
 /** Long enough for any write in progress to be over. */
 const STALE_MS = 3_600_000;
+/** Compared with a stored file at a time. */
+const COMPARED_BYTES = 2 ** 20;
 
 export function fileOf(folder: string, id: string): string {
   return path.join(folder, id + ENDING);
@@ -27,7 +29,7 @@ export function writeTable(folder: string, { id, header, values }: TableRecord<S
   try {
     const descriptor = fs.openSync(temporary, 'wx');
     try {
-      fs.writeFileSync(descriptor, content);
+      for (const piece of content) fs.writeFileSync(descriptor, piece);
       fs.fsyncSync(descriptor);
     } finally {
       fs.closeSync(descriptor);
@@ -42,7 +44,7 @@ export function writeTable(folder: string, { id, header, values }: TableRecord<S
 }
 
 /** A read-only file system answers a recursive mkdir with ENOENT: told as what it is. */
-function makeFolder(folder: string): void {
+export function makeFolder(folder: string): void {
   try {
     fs.mkdirSync(folder, { recursive: true });
   } catch (error) {
@@ -52,12 +54,30 @@ function makeFolder(folder: string): void {
 }
 
 /** Whether the file has exactly this content: a damaged one is written again. */
-function holds(file: string, content: Buffer): boolean {
+function holds(file: string, content: readonly Buffer[]): boolean {
+  let descriptor: number | undefined;
   try {
-    return fs.readFileSync(file).equals(content);
+    descriptor = fs.openSync(file, 'r');
+    const size = content.reduce((sum, piece) => sum + piece.length, 0);
+    if (fs.fstatSync(descriptor).size !== size) return false;
+    for (const piece of content) if (!goesOnWith(descriptor, piece)) return false;
+    return true;
   } catch {
     return false;
+  } finally {
+    if (descriptor !== undefined) fs.closeSync(descriptor);
   }
+}
+
+/** Whether a file goes on with these bytes, read in blocks: a large table is not in memory twice. */
+function goesOnWith(descriptor: number, piece: Buffer): boolean {
+  const block = Buffer.alloc(Math.min(COMPARED_BYTES, piece.length));
+  for (let at = 0; at < piece.length; ) {
+    const length = fs.readSync(descriptor, block, 0, Math.min(block.length, piece.length - at), null);
+    if (length === 0 || !block.subarray(0, length).equals(piece.subarray(at, at + length))) return false;
+    at += length;
+  }
+  return true;
 }
 
 function syncFolder(folder: string): void {

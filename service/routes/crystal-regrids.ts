@@ -54,10 +54,17 @@ export const crystalRegrids = defineRoute({
 function refuseMore({ header }: CrystalRecord, body: CrystalRegrid): void {
   const { rows, columns } = shapeOf(header);
   const less = header.axes === 'edges' ? 0 : 1; // N points make N − 1 cells
+  if (header.quantity === 'dielectricFunction') {
+    const detail =
+      'the table holds a dielectric function: the loss function of a mean is not the mean of the loss function';
+    throw invalidInput([{ parameter: 'id', detail }]);
+  }
   const faults: Fault[] = [];
   const check = (field: 'momentumCells' | 'energyCells', has: number): void => {
-    if (has < 2) faults.push({ pointer: `/${field}`, detail: `the table has ${has + 1} points, too few for two cells` });
-    else if ((body[field] ?? has) > has) faults.push({ pointer: `/${field}`, detail: `is more than the ${has} cells that the table has` });
+    if (has < 2)
+      faults.push({ pointer: `/${field}`, detail: `the table has ${has + 1} points, too few for two cells` });
+    else if ((body[field] ?? has) > has)
+      faults.push({ pointer: `/${field}`, detail: `is more than the ${has} cells that the table has` });
   };
   check('momentumCells', rows - less);
   check('energyCells', columns - less);

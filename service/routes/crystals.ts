@@ -1,8 +1,10 @@
 import type { Context } from 'hono';
+import { VALUES_TYPES, VARIANTS, type ValuesType, valuesDownload } from '../crystals/values-download.ts';
 import { Problem } from '../problem.ts';
 import { qualityOf } from '../quality-reports.ts';
 import { defineRoute, negotiate } from '../route.ts';
 import { CrystalDescription, CrystalList, CrystalValues } from '../schemas/crystal.ts';
+import { CrystalUpload } from '../schemas/crystal-upload.ts';
 
 const IMMUTABLE = 'public, max-age=31536000, immutable';
 const ID = 'SHA-256 of the table, or the alias of a built-in one.';
@@ -42,8 +44,18 @@ export const postCrystal = defineRoute({
   operationId: 'storeCrystal',
   tag: 'crystals',
   summary: 'Store a crystal form factor table',
-  description: 'Tables are content-addressed: the same table is stored once and can be posted again safely.',
+  description: `Tables are content-addressed: the same table is stored once and can be posted again safely.
+
+In JSON, or as a form (multipart/form-data, at most 256 MiB, also when unpacked) of two parts, in any order: \`description\`, the table
+without its values in JSON, and \`values\`, a file. What kind of file it is its content says, not its name: .npy (float32 or float64,
+either byte order, C or Fortran order), HDF5 (float32 or float64), CSV or TSV, each also packed with gzip. A text is in long form
+(three columns: momentum, energy, value) or in matrix form (the first row energies, the first column momenta; for cells both go on
+to the last edge). Axes that increase only. What was found out of the file is listed as \`inferred\`.
+
+Faults of the description have pointers into it (/momentum/edges/3), faults of the file are at /values, or at /values/i/j for row i and
+column j.`,
   body: 'crystal',
+  multipart: { description: CrystalUpload, values: 'The file with the values.' },
   examples: {
     formFactor: {
       summary: 'A form factor with cells',
@@ -68,6 +80,22 @@ export const postCrystal = defineRoute({
         ],
       },
     },
+    dielectricFunction: {
+      summary: 'A dielectric function: its loss function and its imaginary part are at hand',
+      value: {
+        ...table,
+        dielectricFunction: {
+          real: [
+            [12, -3, 0.5],
+            [8, -1, 0.7],
+          ],
+          imaginary: [
+            [0, 9, 0.6],
+            [0, 5, 0.5],
+          ],
+        },
+      },
+    },
   },
   responses: {
     200: { description: 'The same table was already there.', schema: CrystalDescription },
@@ -76,12 +104,17 @@ export const postCrystal = defineRoute({
   problems: ['malformed-body', 'not-acceptable', 'too-large', 'media-type', 'invalid-input', 'busy', 'storage-full'],
   async handle({ c, body, dependencies: { crystals, compute }, signal }) {
     negotiate(c, ['application/json']);
-    const { momentumUnit, ...record } = body;
-    // not stopped when the caller leaves: a table is stored whole or not at all, and it is soon done
-    const { created } = await crystals.add(record);
-    const quality = await qualityOf(record, compute, signal, momentumUnit);
+    const { momentumUnit, inferred, ...record } = body;
+    // storing is not stopped when the caller leaves: a table is stored whole or not at all, and it is soon done
+    const [{ created }, quality] = await Promise.all([
+      crystals.add(record),
+      qualityOf(record, compute, signal, momentumUnit),
+    ]);
     c.header('Location', `/v1/crystals/${body.id}`);
-    return c.json({ ...(await crystals.describe(body.id)), quality }, created ? 201 : 200);
+    return c.json(
+      { ...(await crystals.describe(body.id)), ...(inferred && { inferred }), quality },
+      created ? 201 : 200,
+    );
   },
 });
 
@@ -129,19 +162,41 @@ export const getCrystalValues = defineRoute({
   path: '/v1/crystals/{id}/values',
   operationId: 'downloadCrystal',
   tag: 'crystals',
-  summary: 'A whole table, in the form in which it can be posted',
+  summary: 'A whole table, in a form in which it can be posted',
+  description:
+    'By Accept: the table in JSON; its values as .npy (float64, one row a momentum); or the values with both axes as CSV in matrix form.',
   parameters: { id: ID },
-  responses: { 200: { description: 'The table.', schema: CrystalValues, headers: { ETag: 'The id of the table.' } } },
+  responses: {
+    200: {
+      description: 'The table.',
+      schema: CrystalValues,
+      otherMediaTypes: ['application/octet-stream', 'text/csv'],
+      headers: {
+        ETag: 'The id of the table and its form.',
+        'Content-Disposition': 'A name for the file: .npy and CSV.',
+      },
+    },
+  },
   problems: ['not-found', 'not-acceptable', 'busy'],
   async handle({ c, dependencies: { crystals, compute }, signal }) {
-    const mediaType = negotiate(c, ['application/json']);
     const name = c.req.param('id')!;
     const record = await crystals.find(name);
     if (!record) throw unknownTable(name);
-    const { headers, unchanged } = validatorsOf(c, record.id, crystals.isAlias(name), '-values');
-    if (unchanged) return c.body(null, 304, headers);
-    const text = await compute.run('valuesText', { header: record.header, values: record.values }, { signal });
-    return c.body(text as Uint8Array<ArrayBuffer>, 200, { ...headers, 'Content-Type': mediaType });
+    // two matrices have no form but JSON in which they could be posted again
+    const isDielectric = record.header.quantity === 'dielectricFunction';
+    const type = negotiate(c, isDielectric ? VALUES_TYPES.slice(0, 1) : VALUES_TYPES) as ValuesType;
+    const { tag, ending } = VARIANTS[type];
+    const validators = validatorsOf(c, record.id, crystals.isAlias(name), tag);
+    const headers = { ...validators.headers, Vary: 'Accept' };
+    if (validators.unchanged) return c.body(null, 304, headers);
+    const signals = { first: signal, rest: c.req.raw.signal };
+    const { body, length } = await valuesDownload(record, type, compute, signals);
+    return c.body(body, 200, {
+      ...headers,
+      'Content-Type': type === 'text/csv' ? 'text/csv; charset=utf-8' : type,
+      ...(ending === undefined ? {} : { 'Content-Disposition': `attachment; filename="${record.id}.${ending}"` }),
+      ...(length === undefined ? {} : { 'Content-Length': String(length) }),
+    });
   },
 });
 

@@ -7,12 +7,14 @@ import { crystalRegrids } from './crystal-regrids.ts';
 import { deleteCrystal, getCrystal, getCrystalValues, listCrystals, postCrystal } from './crystals.ts';
 import { healthz, readyz } from './health.ts';
 import { meanInverseSpeed } from './mean-inverse-speed.ts';
+import { modulation } from './modulation.ts';
 import { rates } from './rates.ts';
 import { reach } from './reach.ts';
 import { tradeOffs } from './trade-offs.ts';
 
 export const ROUTES: readonly RouteDefinition[] = [
   rates,
+  modulation,
   tradeOffs,
   reach,
   comparisons,

@@ -16,9 +16,10 @@ export const rates = defineRoute({
   tag: 'rates',
   summary: 'Rates per ionization bin, and the exposure a goal needs',
   description:
-    'Events per exposure in each electron bin for a scenario; with a goal, the exposure that reaches it; with "spectrum": true, dR/dE. ' +
+    'Events per exposure in each electron bin for a scenario; with a goal, the exposure that reaches it; with "spectrum": true, dR/dE; ' +
+    'with "response": true, what any other halo would give; with "uncertainty", quantiles over uncertain parameters. ' +
     'A planning estimate: the collaboration’s own analysis takes precedence.',
-  body: 'scenario',
+  body: 'rates',
   examples: {
     rates: { summary: 'Rates in silicon, everything else by default', value: scenario },
     detection: {
@@ -27,6 +28,32 @@ export const rates = defineRoute({
         ...scenario,
         darkMatter: { ...scenario.darkMatter, mediator: { mass: '30 keV' } },
         goal: { kind: 'detection', atLeast: 3, probability: 0.9, window: { from: 2, to: 6 } },
+      },
+    },
+    uncertainty: {
+      summary: 'What an uncertain halo does to the exposure',
+      value: {
+        ...scenario,
+        goal: { kind: 'exclusion', confidence: 0.9, window: { from: 2, to: 12 } },
+        uncertainty: {
+          draws: 500,
+          seed: 7,
+          parameters: {
+            circularSpeed: '1.5 km/s',
+            escapeSpeed: '35 km/s',
+            localDensity: '0.05 GeV/cm^3',
+            energyPerPair: '0.1 eV',
+          },
+        },
+      },
+    },
+    response: {
+      summary: 'On a date, and the response to any halo',
+      value: {
+        ...scenario,
+        halo: { date: '2027-06-02' },
+        ionization: { maxElectrons: 3 },
+        response: true,
       },
     },
     inlineTable: {
@@ -56,11 +83,15 @@ export const rates = defineRoute({
   async handle({ c, body, dependencies, signal }) {
     negotiate(c, ['application/json']);
     const { crystals, compute, version } = dependencies;
-    const { scenario, table } = await resolveScenario(body, dependencies);
+    const { scenario, table } = await resolveScenario(body.scenario, dependencies);
+    const extras = {
+      ...(body.response ? { response: true as const } : {}),
+      ...(body.uncertainty ? { uncertainty: body.uncertainty } : {}),
+    };
     const id = scenario.crystal.id;
     const began = performance.now();
-    const answer = await crystals.using(id, () => compute.run('rates', { scenario, table }, { signal }));
+    const answer = await crystals.using(id, () => compute.run('rates', { scenario, table, ...extras }, { signal }));
     c.header('Server-Timing', `compute;dur=${(performance.now() - began).toFixed(2)}`);
-    return c.json({ ...answer, provenance: provenanceOf(scenario, id, version) });
+    return c.json({ ...answer, provenance: provenanceOf({ ...scenario, ...extras }, id, version) });
   },
 });

@@ -1,5 +1,4 @@
 import type { Context } from 'hono';
-import { stream } from 'hono/streaming';
 import { reachFigure } from '../figure/reach-figure.ts';
 import { type ReachCurve, reachCurve } from '../reach.ts';
 import { reachCsvHeader, reachCsvRow } from '../reports/reach-csv.ts';
@@ -105,11 +104,12 @@ function streamed<T>(
   textOf: (row: T) => string,
   last?: () => string,
 ): Response {
-  c.header('Content-Type', mediaType);
-  return stream(c, async (out) => {
-    for await (const row of rows) await out.write(textOf(row));
-    if (last) await out.write(last());
-  });
+  const encoder = new TextEncoder();
+  async function* bytes(): AsyncGenerator<Uint8Array> {
+    for await (const row of rows) yield encoder.encode(textOf(row));
+    if (last) yield encoder.encode(last());
+  }
+  return c.body(ReadableStream.from(bytes()), 200, { 'Content-Type': mediaType });
 }
 
 /** The request's own words as title. */

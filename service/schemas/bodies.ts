@@ -3,14 +3,15 @@ import { ChargeTableIn } from './charge-table.ts';
 import { Comparison } from './comparisons.ts';
 import { CrystalTableIn } from './crystal.ts';
 import { CrystalComparison } from './crystal-comparisons.ts';
-import { MeanInverseSpeedIn } from './mean-inverse-speed.ts';
-import { Reach } from './reach.ts';
 import { CrystalRegrid } from './crystal-regrids.ts';
-import { Scenario } from './scenario.ts';
+import { MeanInverseSpeedIn } from './mean-inverse-speed.ts';
+import { ModulationRequest } from './modulation.ts';
+import { RatesRequest } from './rates-request.ts';
+import { Reach } from './reach.ts';
 import { TradeOffs } from './trade-offs.ts';
 
 export const BODIES = {
-  scenario: Scenario,
+  rates: RatesRequest,
   crystal: CrystalTableIn,
   crystalComparison: CrystalComparison,
   crystalRegrid: CrystalRegrid,
@@ -18,6 +19,7 @@ export const BODIES = {
   reach: Reach,
   comparison: Comparison,
   tradeOffs: TradeOffs,
+  modulation: ModulationRequest,
   meanInverseSpeed: MeanInverseSpeedIn,
 };
 export type BodyName = keyof typeof BODIES;

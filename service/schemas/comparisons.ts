@@ -81,12 +81,9 @@ export const ComparisonAnswer = z
       .array(
         z.strictObject({
           mass: quantityOut('MeV'),
-          ratio: z
-            .number()
-            .nullable()
-            .meta({
-              description: 'Candidate over baseline cross section, below 1 is better; null where either has none.',
-            }),
+          ratio: z.number().nullable().meta({
+            description: 'Candidate over baseline cross section, below 1 is better; null where either has none.',
+          }),
           interpolated: z
             .enum(['baseline', 'candidate'])
             .optional()

@@ -5,7 +5,8 @@ import type { AxisKind, TableQuantity } from '../../physics/crystal/crystal-tabl
 import type { QuantityKind } from '../../physics/quantity/quantity.ts';
 import { QuantityError, quantityOf } from '../../physics/quantity/quantity.ts';
 import { contentOf, idOf } from '../crystals/crystal-record.ts';
-import { isPackedMatrix, MATRIX_FIELDS, type PackedMatrix } from '../crystals/matrix.ts';
+import { whereLossIsLost } from '../crystals/given-table.ts';
+import { DIELECTRIC_PARTS, isPackedMatrix, MATRIX_FIELDS, type PackedMatrix } from '../crystals/matrix.ts';
 import { Quality } from './quality.ts';
 import { ABOVE_ZERO, AT_LEAST_ZERO, KINDS, quantity, quantityOut } from './quantity.ts';
 
@@ -90,6 +91,10 @@ const Matrix = z
   .custom<PackedMatrix>(isPackedMatrix, { error: () => 'must be a list of rows, one for each momentum, of numbers' })
   .meta({ id: 'Matrix', description: 'One row a momentum, one column an energy; finite numbers of at least 0.' });
 
+const RealMatrix = z
+  .custom<PackedMatrix>(isPackedMatrix, { error: () => 'must be a list of rows, one for each momentum, of numbers' })
+  .meta({ id: 'RealMatrix', description: 'One row a momentum, one column an energy; finite numbers.' });
+
 const CellMass = z
   .union(
     [
@@ -121,7 +126,7 @@ export interface CrystalHeader {
   readonly name: string;
   readonly source?: string;
   readonly screened: boolean;
-  readonly quantity: TableQuantity;
+  readonly quantity: TableQuantity | 'dielectricFunction';
   readonly axes: AxisKind;
   readonly cellMassGev: number;
   readonly cellVolumeAngstrom3?: number;
@@ -144,7 +149,7 @@ export interface CrystalInput {
   readonly inferred?: readonly string[];
 }
 
-const tableFields = z
+export const tableFields = z
   .strictObject({
     name: z.string().min(1).max(200).refine(wholeText, WHOLE_TEXT),
     source: z
@@ -180,12 +185,20 @@ const tableFields = z
     energy: axis('EnergyAxis', KINDS.energy, 'Energy transfer.'),
     formFactorSquared: Matrix.optional().meta({ description: 'Crystal form factor |f(q, E)|², dimensionless.' }),
     lossFunction: Matrix.optional().meta({ description: 'Loss function Im[−1/ε(q, E)], dimensionless.' }),
+    dielectricFunction: z
+      .strictObject({ real: RealMatrix, imaginary: Matrix })
+      .meta({
+        id: 'DielectricFunction',
+        description:
+          'Dielectric function ε(q, E): as given, rates are those of its loss function; with "screening": "none", those of Im ε.',
+      })
+      .optional(),
   })
   .superRefine(checkTable, { when: () => true })
   .meta({
     id: 'CrystalTable',
     description:
-      'A crystal form factor table: exactly one of formFactorSquared and lossFunction on a grid of momentum and energy.',
+      'A crystal form factor table: exactly one of formFactorSquared, lossFunction and dielectricFunction on a grid of momentum and energy.',
   });
 
 type TableFields = {
@@ -194,9 +207,24 @@ type TableFields = {
   cellVolume?: number;
   bandGap?: number;
   energyPerPair?: number;
-  formFactorSquared?: PackedMatrix;
-  lossFunction?: PackedMatrix;
-};
+} & TableMatrices;
+
+interface TableMatrices {
+  readonly formFactorSquared?: PackedMatrix | undefined;
+  readonly lossFunction?: PackedMatrix | undefined;
+  readonly dielectricFunction?: { readonly real?: PackedMatrix; readonly imaginary?: PackedMatrix } | undefined;
+}
+
+const QUANTITIES = [...MATRIX_FIELDS, 'dielectricFunction'] as const;
+
+/** The matrices that are there, and where. */
+function matricesOf(table: TableMatrices): [string[], PackedMatrix][] {
+  const single = MATRIX_FIELDS.map((field) => [[field], table[field]] as const);
+  const parts = DIELECTRIC_PARTS.map(
+    ([part]) => [['dielectricFunction', part], table.dielectricFunction?.[part]] as const,
+  );
+  return [...single, ...parts].flatMap(([path, matrix]) => (matrix === undefined ? [] : [[[...path], matrix]]));
+}
 
 /** Faults between fields. Runs on whatever could be read, so that all faults come at once. */
 function checkTable(input: unknown, context: z.RefinementCtx): void {
@@ -204,14 +232,18 @@ function checkTable(input: unknown, context: z.RefinementCtx): void {
   const table = input as TableFields;
   const issue = (path: (string | number)[], message: string): void =>
     context.addIssue({ code: 'custom', path, message });
-  const given = MATRIX_FIELDS.filter((field) => table[field] !== undefined);
+  const given = QUANTITIES.filter((field) => table[field] !== undefined);
   if (given.length !== 1)
     issue(
       [],
-      `needs exactly one of "formFactorSquared" and "lossFunction"; got ${given.length === 0 ? 'neither' : 'both'}`,
+      `needs exactly one of "formFactorSquared", "lossFunction" and "dielectricFunction"; got ${given.length || 'none'}`,
     );
-  if (table.lossFunction !== undefined && table.cellVolume === undefined)
-    issue(['cellVolume'], 'a loss function needs the volume of the cell');
+  for (const [field, name] of [
+    ['lossFunction', 'loss'],
+    ['dielectricFunction', 'dielectric'],
+  ] as const)
+    if (table[field] !== undefined && table.cellVolume === undefined)
+      issue(['cellVolume'], `a ${name} function needs the volume of the cell`);
   const read = (field: string): boolean => !context.issues.some(({ path }) => path?.[0] === field);
   if (
     typeof table.bandGap === 'number' &&
@@ -234,33 +266,53 @@ function checkTable(input: unknown, context: z.RefinementCtx): void {
   ] as const) {
     if (axis && cells(axis) < 2) issue([name], 'too short: a table has at least 2 × 2 values');
   }
-  for (const field of given) {
-    const matrix = table[field];
+  for (const [field, matrix] of matricesOf(table)) {
     if (!isPackedMatrix(matrix)) continue;
-    const numberOf = (pointer: string): (string | number)[] => [field, ...pointer.split('/').slice(1).map(Number)];
+    const numberOf = (pointer: string): (string | number)[] => [...field, ...pointer.split('/').slice(1).map(Number)];
     for (const fault of matrix.faults) issue(numberOf(fault.pointer), fault.detail);
-    if (matrix.faultCount > matrix.faults.length) issue([field], `${matrix.faultCount} faulty values or rows in all`);
+    if (matrix.faultCount > matrix.faults.length) issue(field, `${matrix.faultCount} faulty values or rows in all`);
     if (momentum && matrix.rowLengths.length !== cells(momentum)) {
-      issue([field], `has ${matrix.rowLengths.length} rows; the momentum axis makes ${cells(momentum)}`);
+      issue(field, `has ${matrix.rowLengths.length} rows; the momentum axis makes ${cells(momentum)}`);
     }
     const columns = energy ? cells(energy) : matrix.rowLengths[0];
     const why = energy ? 'the energy axis makes' : 'the first row has';
     let ragged = 0;
     matrix.rowLengths.forEach((length, i) => {
       if (length >= 0 && length !== columns && ragged++ < 10)
-        issue([field, i], `has ${length} numbers; ${why} ${columns}`);
+        issue([...field, i], `has ${length} numbers; ${why} ${columns}`);
     });
   }
 }
 
+/** Matrices as one array, on shared memory. */
+function oneAfterTheOther(matrices: readonly Float64Array[]): Float64Array {
+  const size = matrices.reduce((sum, { length }) => sum + length, 0);
+  const all = new Float64Array(new SharedArrayBuffer(8 * size));
+  let at = 0;
+  for (const matrix of matrices) {
+    all.set(matrix, at);
+    at += matrix.length;
+  }
+  return all;
+}
+
 /** A table in a request body (its matrix packed by crystals/matrix first) → header and values in fixed units. */
-export const CrystalTableIn = tableFields.transform((table): CrystalInput => {
-  const field = table.formFactorSquared ? 'formFactorSquared' : 'lossFunction';
-  const { values } = table[field] as PackedMatrix;
+export const CrystalTableIn = tableFields.transform((table, context): CrystalInput => {
+  const field = QUANTITIES.find((quantity) => table[quantity] !== undefined) ?? 'formFactorSquared';
+  const given = matricesOf(table);
+  const matrices = given.map(([, { values }]) => values);
+  const lost = field === 'dielectricFunction' ? whereLossIsLost(matrices[0], matrices[1]) : -1;
+  if (lost >= 0) {
+    const [field, { rowLengths }] = given[1];
+    const path = [...field, Math.floor(lost / rowLengths[0]), lost % rowLengths[0]];
+    context.addIssue({ code: 'custom', path, message: 'is too near 0, like the real part: Im[−1/ε] cannot be held' });
+    return z.NEVER;
+  }
+  const values = matrices.length === 1 ? matrices[0] : oneAfterTheOther(matrices);
   const header: CrystalHeader = {
     name: table.name,
     ...(table.source === undefined ? {} : { source: table.source }),
-    screened: table.screened || field === 'lossFunction',
+    screened: table.screened || field !== 'formFactorSquared',
     quantity: field,
     axes: table.momentum.kind,
     cellMassGev: table.cellMass,
@@ -295,7 +347,7 @@ export const CrystalDescription = z
       .array(z.string())
       .optional()
       .meta({ description: 'What is stated about the accuracy of the numbers, for built-in tables.' }),
-    quantity: z.enum(['formFactorSquared', 'lossFunction']),
+    quantity: z.enum(['formFactorSquared', 'lossFunction', 'dielectricFunction']),
     screened: z.boolean(),
     cellMass: quantityOut('GeV'),
     cellVolume: quantityOut('angstrom^3').optional(),
@@ -335,5 +387,8 @@ export const CrystalValues = z
     energy: ValuesAxis,
     formFactorSquared: z.array(z.array(z.number())).optional(),
     lossFunction: z.array(z.array(z.number())).optional(),
+    dielectricFunction: z
+      .strictObject({ real: z.array(z.array(z.number())), imaginary: z.array(z.array(z.number())) })
+      .optional(),
   })
   .meta({ id: 'CrystalValues', description: 'A whole table, in the form in which it can be posted.' });

@@ -112,10 +112,18 @@ export const Backgrounds = z
   .max(50)
   .default([]);
 
-const instant = z
-  .union([z.iso.date(), z.iso.datetime({ offset: true })], {
-    error: () => 'must be a date such as "2027-03-01", or with a time and its zone',
-  })
+const NO_INSTANT = 'must be a date such as "2027-03-01", or with a time and its zone, "2027-03-01T12:00:00Z"';
+const told = { error: () => NO_INSTANT };
+
+export const instant = z
+  .union(
+    [
+      z.iso.date(told),
+      z.iso.datetime({ offset: true, ...told }),
+      z.iso.datetime({ offset: true, precision: -1, ...told }),
+    ],
+    told,
+  )
   .meta({ id: 'Date', description: 'ISO 8601; a date without time is 00:00 UTC.' });
 
 export interface PayloadStage {

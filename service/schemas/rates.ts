@@ -1,6 +1,8 @@
 /** The answer of POST /v1/rates. */
 import { z } from 'zod';
+import { HaloOut } from './halo-answer.ts';
 import { estimateOut, quantitiesOut, quantityOut } from './quantity.ts';
+import { UncertaintyOut } from './uncertainty.ts';
 
 const RATE = estimateOut('1/(kg yr)');
 
@@ -117,6 +119,18 @@ const SpectrumOut = z
       'Mean dR/dE between neighbouring numbers of the table’s energy axis, from the gap up; one value fewer than edges.',
   });
 
+const ResponseOut = z
+  .strictObject({
+    speeds: z.strictObject({ unit: z.literal('km/s'), edges: z.array(z.number()) }),
+    kernels: z.array(z.strictObject({ electrons: z.int(), values: quantitiesOut('1/(kg yr)') })),
+  })
+  .meta({
+    id: 'Response',
+    description:
+      'Halo-independent: R_n = ∫ K_n(v) η(v) dv for any halo of the scenario’s local density. Per bin of true electrons the mean of K_n in ' +
+      'each cell of speeds, one value fewer than edges: R_n ≈ Σ K_n ∫_cell η dv. Nothing below the first edge; empty where nothing is reached.',
+  });
+
 export const RatesAnswer = z
   .strictObject({
     bins: z.array(Bin),
@@ -125,7 +139,10 @@ export const RatesAnswer = z
     lostCharge: RATE.optional().meta({ description: 'Events whose charge a table of P(n|E) places in no bin.' }),
     measured: Measured.optional().meta({ description: 'With a readout or backgrounds; bins stay the true electrons.' }),
     exposure: Exposure.optional(),
+    halo: HaloOut.optional().meta({ description: 'With a date or a model other than the standard one.' }),
     spectrum: SpectrumOut.optional(),
+    response: ResponseOut.optional(),
+    uncertainty: UncertaintyOut.optional(),
     notices: z.array(Notice),
     provenance: Provenance,
   })

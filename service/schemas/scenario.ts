@@ -91,7 +91,7 @@ export interface ScenarioIn {
 }
 
 /** Faults between sections; runs on whatever could be read, so every step is taken with care. */
-function checkScenario(input: unknown, context: z.RefinementCtx): void {
+export function checkScenario(input: unknown, context: z.RefinementCtx): void {
   if (typeof input !== 'object' || input === null || Array.isArray(input)) return;
   const {
     ionization = DEFAULT_IONIZATION,
@@ -192,25 +192,31 @@ function filled({ halo, screening, ionization = DEFAULT_IONIZATION, readout, bac
   };
 }
 
+/** The fields of a scenario, for requests that add to them. */
+export const scenarioShape = {
+  darkMatter: DarkMatter,
+  crystal: Crystal,
+  ...sections,
+  payload: Payload.optional(),
+  spectrum: z.boolean().default(false).meta({ description: 'Adds dR/dE on the table’s energy axis.' }),
+};
+
+interface ScenarioFields extends Sections {
+  readonly darkMatter: DarkMatterIn;
+  readonly crystal: CrystalIn;
+  readonly payload?: readonly PayloadStage[] | undefined;
+  readonly spectrum: boolean;
+}
+
+export function scenarioOf({ darkMatter, crystal, payload, spectrum, ...rest }: ScenarioFields): ScenarioIn {
+  return { darkMatter, crystal, ...filled(rest), payload, spectrum };
+}
+
 export const Scenario = z
-  .strictObject({
-    darkMatter: DarkMatter,
-    crystal: Crystal,
-    ...sections,
-    payload: Payload.optional(),
-    spectrum: z.boolean().default(false).meta({ description: 'Adds dR/dE on the table’s energy axis.' }),
-  })
+  .strictObject(scenarioShape)
   .superRefine(checkScenario, { when: () => true })
   .meta({ id: 'Scenario', description: 'A scenario. Without a goal the answer has rates only.' })
-  .transform(
-    ({ darkMatter, crystal, payload, spectrum, ...rest }): ScenarioIn => ({
-      darkMatter,
-      crystal,
-      ...filled(rest),
-      payload,
-      spectrum,
-    }),
-  );
+  .transform(scenarioOf);
 
 const MOST_TABLES = 8;
 

@@ -18,6 +18,7 @@ const { version } = JSON.parse(text('package.json')) as { version: string };
 
 interface Operation {
   readonly operationId: string;
+  readonly parameters?: readonly { readonly name: string; readonly example?: string }[];
   readonly requestBody?: {
     readonly content: Record<string, { readonly examples?: Record<string, { readonly value: unknown }> }>;
   };
@@ -100,11 +101,17 @@ describe('examples', () => {
     ),
   );
   const app = testApp();
+  /** The path with the examples of its parameters. */
+  const filled = (where: string): string =>
+    (document.paths[where]['post'].parameters ?? []).reduce(
+      (at, { name, example }) => at.replace(`{${name}}`, example ?? ''),
+      where,
+    );
 
   test.each(examples)('%s: example "%s" is answered as documented', async (call, _name, value) => {
     const [method, where] = call.split(' ');
     const route = ROUTES.find((each) => each.path === where && each.method === method.toLowerCase())!;
-    const response = await app.call(method, where, value);
+    const response = await app.call(method, filled(where), value);
     expect([200, 201]).toContain(response.status);
     const documented = route.responses[response.status];
     expect(response.headers.get('content-type')).toBe(documented.mediaType ?? 'application/json');

@@ -165,7 +165,8 @@ describe('document', () => {
 });
 
 describe('failures', () => {
-  const failing = (error: unknown) => testApp({ compute: { run: () => Promise.reject(error), workers: 1, async close() {} } });
+  const failing = (error: unknown) =>
+    testApp({ compute: { run: () => Promise.reject(error), workers: 1, async close() {} } });
 
   test('POST /v1/rates: the unknown is a bare 500 to the caller, everything to the log', async () => {
     const broken = failing(new Error('secret in /srv/data'));

@@ -71,7 +71,7 @@ describe(`POST ${PATH}`, () => {
       ['/speeds/values/0', '/speeds/values/1', '/speeds/values/2'],
     ],
     ['speeds beyond all numbers', { speeds: { unit: 'c', values: [1, 1e305] } }, ['/speeds/values/1']],
-    ['unknown fields', { halo: { date: '2027-01-01' }, speeds: speeds(1), extra: 1 }, ['/halo/date', '/extra']],
+    ['unknown fields', { halo: { day: '2027-01-01' }, speeds: speeds(1), extra: 1 }, ['/halo/day', '/extra']],
     [
       'a faulty halo',
       { halo: { circularSpeed: 238, escapeSpeed: '2 c' }, speeds: speeds(1) },

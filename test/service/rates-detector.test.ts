@@ -202,7 +202,12 @@ describe('POST /v1/rates: goals over backgrounds', () => {
   });
 
   it('check: simulated experiments beside the formula, the same for the same seed', async () => {
-    const goal = { kind: 'discovery', significance: 5, window: { from: 2, to: 2 }, check: { experiments: 2000, seed: 7 } };
+    const goal = {
+      kind: 'discovery',
+      significance: 5,
+      window: { from: 2, to: 2 },
+      check: { experiments: 2000, seed: 7 },
+    };
     const scenario = silicon({ goal, backgrounds: [darkCurrent({ relativeUncertainty: 0.001 })] });
     const [first, again] = [await rates(scenario), await rates(scenario)];
     expect(again).toEqual(first);

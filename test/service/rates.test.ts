@@ -394,7 +394,7 @@ describe('POST /v1/rates, faults', () => {
     ['an id that is a number', { ...scenario, crystal: { id: 5 } }, ['/crystal/id']],
     ['an id and more', { ...scenario, crystal: { id: 'silicon', name: 'x' } }, ['/crystal/name']],
     ['a misspelt field', changedAt(scenario, '/halo/escapespeed', '544 km/s'), ['/halo/escapespeed']],
-    ['a field not built yet', changedAt(scenario, '/halo/date', '2027-06-02'), ['/halo/date']],
+    ['a field that is not known', changedAt(scenario, '/halo/day', '2027-06-02'), ['/halo/day']],
     [
       'a field with a slash and a tilde',
       changedAt(scenario, '/darkMatter', inventedDarkMatter({ 'a/b~c': 1 })),
@@ -420,7 +420,7 @@ describe('POST /v1/rates, faults', () => {
   test('POST /v1/rates: every fault at once, an unknown table among them', async () => {
     const body = {
       darkMatter: { mass: 10, referenceCrossSection: '1e-37 s', mediator: 'medium' },
-      halo: { escapeSpeed: '-1 km/s', date: '2027-01-01' },
+      halo: { escapeSpeed: '-1 km/s', date: 'tomorrow' },
       crystal: { id: 'unobtainium' },
       ionization: { bandGap: '3 eV', energyPerPair: '2 eV', maxElectrons: 0 },
       goal: { kind: 'detection', atLeast: 0, probability: 2 },

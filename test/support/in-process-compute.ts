@@ -7,10 +7,11 @@ export function inProcessCompute(): Compute {
   return {
     async run(task, input, options = {}) {
       options.signal?.throwIfAborted();
-      const answer = work({ task, input });
+      const answer = await work({ task, input });
       if ('failure' in answer) throw errorOf(answer.failure);
       return answer.value as never;
     },
+    workers: 1,
     async close() {},
   };
 }

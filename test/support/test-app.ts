@@ -1,4 +1,7 @@
 /** The application in this process: no port, no threads, no files but the built-in silicon tables. */
+import fs from 'node:fs';
+import os from 'node:os';
+import path from 'node:path';
 import { fileURLToPath } from 'node:url';
 import { type AppOptions, createApp } from '../../service/app.ts';
 import { loadBuiltIn, readCatalogue } from '../../service/crystals/built-in.ts';
@@ -22,6 +25,9 @@ export interface TestApp {
 }
 
 const tables = fileURLToPath(new URL('../../service/tables', import.meta.url));
+/** Where uploads lie while they are read: nothing stays there. */
+export const UPLOADS = path.join(os.tmpdir(), `gramyear-test-uploads-${process.pid}-${process.hrtime.bigint()}`);
+process.on('exit', () => fs.rmSync(UPLOADS, { recursive: true, force: true }));
 const builtIns = readCatalogue(tables)
   .filter(({ alias }) => alias.startsWith('silicon'))
   .map((entry) => loadBuiltIn(tables, entry));
@@ -34,6 +40,7 @@ export function testApp({ store = memoryStore(), ...options }: TestAppOptions = 
     chargeTables: memoryStore(),
     compute: inProcessCompute(),
     version: '1.2.3',
+    uploadFolder: UPLOADS,
     isReady: () => true,
     log: log as unknown as AppOptions['log'],
     deadlineSeconds: 60,

@@ -41,12 +41,13 @@ export function readNpy(file: OpenFile, axes: PerAxis<DescribedAxis | undefined>
   const { values } = matrix;
   let at = 0;
   for (const block of blocksFrom(file, end)) {
-    for (const value of numbersOf(block, bytesPerNumber, bigEndian)) {
+    const numbers = numbersOf(block, bytesPerNumber, bigEndian);
+    for (let k = 0; k < numbers.length; k++, at++) {
+      const value = numbers[k];
       const index = fortranOrder ? (at % rows) * columns + Math.floor(at / rows) : at;
       if (value >= 0 && value < Infinity)
         values[index] = value + 0; // −0 is 0
       else matrix.refuse(index, refusalOf(value));
-      at++;
     }
   }
   const endian = bigEndian ? ', big endian' : '';
@@ -71,10 +72,12 @@ function headerOf(file: OpenFile): NpyHeader {
   const start = bytesAt(file, 0, 12);
   if (start.length < 12) throw faultyValues('is cut short: it has no .npy header');
   const [major, minor] = [start[6], start[7]];
-  if (major < 1 || major > 3 || minor !== 0) throw faultyValues(`is .npy of version ${major}.${minor}; known are 1 to 3`);
+  if (major < 1 || major > 3 || minor !== 0)
+    throw faultyValues(`is .npy of version ${major}.${minor}; known are 1 to 3`);
   const from = major === 1 ? 10 : 12;
   const length = major === 1 ? start.readUInt16LE(8) : start.readUInt32LE(8);
-  if (length > MOST_HEADER_BYTES) throw faultyValues(`has a .npy header of ${length} bytes; at most ${MOST_HEADER_BYTES}`);
+  if (length > MOST_HEADER_BYTES)
+    throw faultyValues(`has a .npy header of ${length} bytes; at most ${MOST_HEADER_BYTES}`);
   const header = bytesAt(file, from, length);
   if (header.length < length) throw faultyValues('is cut short inside its .npy header');
   return { ...factsOf(header.toString(major === 3 ? 'utf8' : 'latin1')), end: from + length };

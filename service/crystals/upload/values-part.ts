@@ -12,13 +12,11 @@ export const MOST_AXIS_NUMBERS = 100_000;
 export interface DescribedAxis {
   readonly kind: AxisKind;
   readonly numbers: readonly number[];
-}
-
-/** An axis that the description leaves to the file. */
-export interface FileAxis extends DescribedAxis {
-  /** Where the file names one. */
   readonly unit?: string;
 }
+
+/** An axis that the description leaves to the file, in the unit that the file names, if it does. */
+export type FileAxis = DescribedAxis;
 
 export const AXES = ['momentum', 'energy'] as const;
 export type AxisName = (typeof AXES)[number];

@@ -1,7 +1,11 @@
 import { describe, expect, it } from 'vitest';
 import { SPEED_OF_LIGHT_KM_PER_S } from '../../../physics/constants.ts';
 import { seededRandom } from '../../../physics/exposure/random.ts';
-import { componentsHalo, type WeightedComponent } from '../../../physics/halo/components.ts';
+import {
+  componentsHalo,
+  largestSpeedOfComponentsKmPerS,
+  type WeightedComponent,
+} from '../../../physics/halo/components.ts';
 import { type GalacticVelocity, speedOf, velocityDifference } from '../../../physics/halo/galactic-velocity.ts';
 import { meanSpeedKmPerS } from '../../../physics/halo/mean-speed.ts';
 import { speedTail, tailAt } from '../../../physics/halo/speed-tail.ts';
@@ -215,6 +219,12 @@ describe('componentsHalo: wrong input, named', () => {
     ['one axis without dispersion', { dispersionKmPerS: [100, 100, 0] }, ['components', 1, 'dispersion']],
     ['axes too far apart', { dispersionKmPerS: [110, 100, 10] }, ['components', 1, 'dispersion']],
     ['a mean velocity beyond escape', { meanVelocityKmPerS: [0, 600, 0] }, ['components', 1, 'meanVelocity']],
+    ['a dispersion lost beside the speeds', { dispersionKmPerS: 0.01 }, ['components', 1, 'dispersion']],
+    [
+      'one that rounding swallows',
+      { dispersionKmPerS: 1e-20, meanVelocityKmPerS: [0, 1, 0] },
+      ['components', 1, 'dispersion'],
+    ],
     ['a superluminal escape speed', { escapeSpeedKmPerS: SPEED_OF_LIGHT_KM_PER_S }, ['components', 1, 'escapeSpeed']],
     ['a velocity that is no number', { meanVelocityKmPerS: [0, Number.NaN, 0] }, ['components', 1, 'meanVelocity']],
     [
@@ -234,5 +244,38 @@ describe('componentsHalo: wrong input, named', () => {
     expect(() => componentsHalo([component()], [3e5, 0, 0])).toThrowError(
       expect.objectContaining({ parameter: ['laboratoryVelocity'] }),
     );
+  });
+});
+
+describe('largestSpeedOfComponentsKmPerS', () => {
+  it('is the largest speed of componentsHalo, of every form of component', () => {
+    const cases: Partial<WeightedComponent>[] = [
+      {},
+      { dispersionKmPerS: 0, meanVelocityKmPerS: [0, -300, 0] },
+      { dispersionKmPerS: 10, meanVelocityKmPerS: [0, -300, 0] },
+      { dispersionKmPerS: [200, 100, 120] },
+      { dispersionKmPerS: [40, 30, 20], meanVelocityKmPerS: [10, 100, 0] },
+      { dispersionKmPerS: [40, 30, 20], meanVelocityKmPerS: [10, 500, 0] },
+    ];
+    const halos = cases.map((change) => [component(change)]);
+    for (const components of [...halos, halos.flat()])
+      expect(largestSpeedOfComponentsKmPerS(components, LABORATORY)).toBe(
+        componentsHalo(components, LABORATORY).largestSpeedKmPerS,
+      );
+  });
+});
+
+describe('componentsHalo near the escape speed', () => {
+  it('a narrow ellipsoid that the cut divides: as the closed form’s moments, ∫ η dv = 1 and ⟨v⟩ near |u − V|', () => {
+    const halo = componentsHalo(
+      [component({ dispersionKmPerS: [2, 2.2, 1.8], meanVelocityKmPerS: [0, -542, 0] })],
+      LABORATORY,
+    );
+    const tail = speedTail(halo, 0);
+    expect(tailAt(tail, 0)).toBeCloseTo(1, 6);
+    // the cut takes the outer side: the mean lies within a dispersion or two inside of 792.3 km/s
+    const mean = meanSpeedKmPerS(halo);
+    expect(mean).toBeLessThan(792.4);
+    expect(mean).toBeGreaterThan(792.3 - 2 * 2.2);
   });
 });
