@@ -180,7 +180,7 @@ function operationOf(route: RouteDefinition, components: Map<string, JsonSchema>
   };
 }
 
-export function openApiDocument(version: string): OpenAPIObject {
+function openApiDocument(version: string): OpenAPIObject {
   const builder = OpenApiBuilder.create()
     .addOpenApiVersion('3.1.0')
     .addInfo({

@@ -13,7 +13,7 @@ export const SPEED_OF_LIGHT_KM_PER_S = 299_792.458;
 export const ELECTRONVOLT_J = 1.602_176_634e-19;
 
 /** Planck constant, J s. Exact (SI 2019). */
-export const PLANCK_J_S = 6.626_070_15e-34;
+const PLANCK_J_S = 6.626_070_15e-34;
 
 /** Fine-structure constant α, dimensionless. CODATA 2022, uncertainty 1.1e-12. */
 export const FINE_STRUCTURE = 7.297_352_564_3e-3;

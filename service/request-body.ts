@@ -12,7 +12,7 @@ import { Problem } from './problem.ts';
 import type { BODIES, BodyName } from './schemas/bodies.ts';
 
 /** JSON bodies, decoded. */
-export const MOST_JSON_BYTES = 64 * 2 ** 20;
+const MOST_JSON_BYTES = 64 * 2 ** 20;
 /** Bodies up to this size are parsed where they arrive: well under a millisecond. */
 const SMALL_BYTES = 32 * 2 ** 10;
 /** Bytes of bodies held at once by all requests together; more than this and the next one is told to come back. */

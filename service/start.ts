@@ -14,7 +14,7 @@ import type { DocsPage } from './docs-page.ts';
 import type { Log } from './log.ts';
 
 /** The folder that holds package.json: the sources' parent, or that of `dist`. */
-export function packageFolder(from: string): string {
+function packageFolder(from: string): string {
   let folder = from;
   while (!fs.existsSync(path.join(folder, 'package.json'))) folder = path.dirname(folder);
   return folder;

@@ -13,7 +13,7 @@ import { gaussianCells, normalBetween } from '../numeric/gaussian-cells.ts';
 const LARGEST_NOISE_ELECTRONS = 100;
 
 /** σ, rms electrons, 0…100. @throws DomainError outside. */
-export function requireNoise(noiseElectrons: number): void {
+function requireNoise(noiseElectrons: number): void {
   requireNonNegative('noise', noiseElectrons);
   if (noiseElectrons > LARGEST_NOISE_ELECTRONS) {
     throw new DomainError('noise', noiseElectrons, `at most ${LARGEST_NOISE_ELECTRONS} electrons`);
@@ -21,7 +21,7 @@ export function requireNoise(noiseElectrons: number): void {
 }
 
 /** An integer of at least 1. @throws DomainError otherwise. */
-export function requireMaxElectrons(maxElectrons: number): void {
+function requireMaxElectrons(maxElectrons: number): void {
   if (!(Number.isSafeInteger(maxElectrons) && maxElectrons >= 1)) {
     throw new DomainError('maxElectrons', maxElectrons, 'an integer of at least 1');
   }

@@ -34,7 +34,7 @@ export interface GaussianComponent {
 }
 
 /** Largest ratio of two dispersions: the angular integral's cost grows with its square. */
-export const LARGEST_AXIS_RATIO = 10;
+const LARGEST_AXIS_RATIO = 10;
 /** Most dispersions that the component's range of speeds may be wide: tables of η have sections of a few of them. */
 const WIDEST_RANGE = 5000;
 /** Smallest dispersion that is not 0, as a share of the largest speed: rounding swallows less. */

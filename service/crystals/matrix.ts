@@ -29,7 +29,7 @@ export function isPackedMatrix(value: unknown): value is PackedMatrix {
 }
 
 /** Packs an array of rows of numbers, each finite and (if so asked) at least 0; collects what is not. Anything else comes back as it is. */
-export function packMatrix(rows: unknown, mayBeNegative = false): unknown {
+function packMatrix(rows: unknown, mayBeNegative = false): unknown {
   if (!Array.isArray(rows)) return isPackedMatrix(rows) ? { packed: false } : rows;
   const form = mayBeNegative ? 'must be a finite number' : 'must be a number of at least 0';
   const faults: { pointer: string; detail: string }[] = [];

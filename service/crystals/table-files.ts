@@ -15,7 +15,7 @@ const STALE_MS = 3_600_000;
 /** Compared with a stored file at a time. */
 const COMPARED_BYTES = 2 ** 20;
 
-export function fileOf(folder: string, id: string): string {
+function fileOf(folder: string, id: string): string {
   return path.join(folder, id + ENDING);
 }
 

@@ -100,7 +100,7 @@ const DarkCurrent = z
     readoutIntervalDays: readoutInterval,
   }));
 
-export const BackgroundKind = z
+const BackgroundKind = z
   .discriminatedUnion('kind', [PerBin, Flat, DarkCurrent] as never, {
     error: () => 'must be "perBin", "flat" or "darkCurrent"',
   })

@@ -72,7 +72,7 @@ const CrystalReference = z
   .meta({ id: 'CrystalReference', description: 'A stored table by id or alias.' });
 
 /** A stored table or one inline. */
-export const Crystal = z
+const Crystal = z
   .union([CrystalReference, CrystalTableIn], { error: () => 'must be {"id": "…"} of a stored table, or a whole table' })
   .meta({ id: 'Crystal' });
 export type CrystalIn = { readonly id: string } | CrystalInput;

@@ -8,7 +8,7 @@ import { receiveForm } from './receive-form.ts';
 import { inUploadFolder } from './upload-folder.ts';
 
 /** A form as it is sent, and its values once unpacked. */
-export const MOST_FORM_BYTES = 256 * 2 ** 20;
+const MOST_FORM_BYTES = 256 * 2 ** 20;
 /** Bytes of all forms that are being received or read; more than this and the next one is told to come back. */
 const MOST_BYTES_HELD = 2 ** 30;
 

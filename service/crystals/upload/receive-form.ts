@@ -10,7 +10,7 @@ import { Busboy, type BusboyFileStream, type BusboyInstance } from '@fastify/bus
 import { type Fault, invalidInput, Problem, pointerOf } from '../../problem.ts';
 
 /** Two axes of 100,000 numbers each and a long provenance fit well. */
-export const MOST_DESCRIPTION_BYTES = 8 * 2 ** 20;
+const MOST_DESCRIPTION_BYTES = 8 * 2 ** 20;
 /** A form of more parts than this is no table. */
 const MOST_PARTS = 10;
 

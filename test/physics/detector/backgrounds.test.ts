@@ -2,8 +2,8 @@ import { describe, expect, it } from 'vitest';
 import { darkCurrentBackground, flatBackground, perBinBackground } from '../../../physics/detector/backgrounds.ts';
 import { readoutResponse } from '../../../physics/detector/readout.ts';
 import type { DomainError } from '../../../physics/errors.ts';
-import { stepIonization } from '../../../physics/ionization/step.ts';
 import { fanoIonization } from '../../../physics/ionization/fano.ts';
+import { stepIonization } from '../../../physics/ionization/step.ts';
 import { normalBetween } from '../../../physics/numeric/gaussian-cells.ts';
 
 const QUIET = readoutResponse({ noiseElectrons: 0, efficiency: 1, maxElectrons: 5 });

@@ -1,8 +1,8 @@
 import { describe, expect, it } from 'vitest';
 import { flatSpectrumRates } from '../../../physics/detector/flat-spectrum.ts';
 import { DomainError } from '../../../physics/errors.ts';
-import { stepIonization } from '../../../physics/ionization/step.ts';
 import { fanoIonization } from '../../../physics/ionization/fano.ts';
+import { stepIonization } from '../../../physics/ionization/step.ts';
 import { tableIonization } from '../../../physics/ionization/table.ts';
 
 /** ∫ P(n|E) dE on a uniform grid cut at the multiples of the gap, with Gauss's two nodes in every cell. */
