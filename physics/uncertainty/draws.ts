@@ -31,7 +31,7 @@ export interface ParameterDraws {
   readonly redrawn: number;
 }
 
-export const LARGEST_DRAWS = 100_000;
+const LARGEST_DRAWS = 100_000;
 /** Draws that may be unphysical for each that is wanted. */
 const MOST_REDRAWN = 100;
 
