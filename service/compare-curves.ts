@@ -2,6 +2,7 @@
 import { createPatch } from 'rfc6902';
 import { compareReach, type OneSidedPoint, type RatioAt, type ReachComparison } from '../physics/reach/comparison.ts';
 import type { CurvePoint } from '../physics/reach/mass-grid.ts';
+import type { FigureCurve } from './figure/figure-input.ts';
 import { provenanceOf } from './provenance.ts';
 import { reachCurve } from './reach.ts';
 import type { Dependencies } from './route.ts';
@@ -10,11 +11,14 @@ import type { ComparisonAnswer, ComparisonIn, SideIn } from './schemas/compariso
 interface Side {
   readonly points: readonly CurvePoint[];
   readonly request: Readonly<Record<string, unknown>> | undefined;
+  readonly lightestMassMev: number | undefined;
 }
 
 export interface CurvesCompared {
   readonly comparison: ReachComparison;
   readonly answer: ComparisonAnswer;
+  /** Both, for a figure. */
+  readonly curves: FigureCurve[];
 }
 
 export async function compareCurves(
@@ -32,8 +36,14 @@ export async function compareCurves(
     candidate: candidate.request ?? candidate.points,
     tolerance,
   };
+  const figured = (name: string, side: Side): FigureCurve => ({
+    name,
+    points: side.points,
+    lightestMassMev: side.lightestMassMev,
+  });
   return {
     comparison,
+    curves: [figured('baseline', baseline), figured('candidate', candidate)],
     answer: {
       verdict: comparison.verdict,
       points: comparison.points.map(({ massMev, ratio, interpolated }) => ({
@@ -73,13 +83,14 @@ async function sideOf(side: SideIn, dependencies: Dependencies, signal: AbortSig
       massMev: mass.value,
       crossSectionCm2: crossSection?.value ?? null,
     }));
-    return { points, request: side.request };
+    return { points, request: side.request, lightestMassMev: side.lightestMass?.value };
   }
   const curve = await reachCurve(side, dependencies, signal, at);
   const points: CurvePoint[] = [];
   for await (const { mass, crossSection } of curve.points)
     points.push({ massMev: mass.value, crossSectionCm2: crossSection?.value ?? null });
-  return { points, request: curve.summary().request };
+  const { request, lightestMass } = curve.summary();
+  return { points, request, lightestMassMev: lightestMass?.value };
 }
 
 function ratioOut(at: RatioAt | null): ComparisonAnswer['largest']['gain'] {

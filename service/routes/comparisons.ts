@@ -1,10 +1,11 @@
 import { compareCurves } from '../compare-curves.ts';
+import { reachFigure } from '../figure/reach-figure.ts';
 import { comparisonCsv } from '../reports/comparison-csv.ts';
 import { comparisonMarkdown } from '../reports/comparison-markdown.ts';
 import { defineRoute, negotiate } from '../route.ts';
 import { ComparisonAnswer } from '../schemas/comparisons.ts';
 
-const MEDIA_TYPES = ['application/json', 'text/markdown', 'text/csv'];
+const MEDIA_TYPES = ['application/json', 'text/markdown', 'text/csv', 'image/svg+xml'];
 
 const curve = (noise: number) => ({
   scenario: {
@@ -34,7 +35,7 @@ export const comparisons = defineRoute({
   summary: 'What changed between two reach curves',
   description:
     'Each side is a reach request or the answer of one. The ratio per mass on the common range (log–log where the grids differ), the ' +
-    'largest gain and loss, what only one side reaches, what differs between the requests, a verdict. JSON, Markdown or CSV by Accept.',
+    'largest gain and loss, what only one side reaches, what differs between the requests, a verdict. JSON, Markdown, CSV, or a figure of both curves by Accept.',
   body: 'comparison',
   examples: {
     noise: { summary: 'A quieter readout', value: { baseline: curve(0.2), candidate: curve(0.15), tolerance: 0.05 } },
@@ -63,9 +64,16 @@ export const comparisons = defineRoute({
   async handle({ c, body, dependencies, signal }) {
     const mediaType = negotiate(c, MEDIA_TYPES);
     const began = performance.now();
-    const { comparison, answer } = await compareCurves(body, dependencies, signal);
+    const { comparison, answer, curves } = await compareCurves(body, dependencies, signal);
     c.header('Server-Timing', `compute;dur=${(performance.now() - began).toFixed(2)}`);
     if (mediaType === 'application/json') return c.json(answer);
+    if (mediaType === 'image/svg+xml') {
+      return c.body(
+        reachFigure({ title: 'Two reach curves', subtitle: `the candidate is: ${answer.verdict}`, curves }),
+        200,
+        { 'Content-Type': mediaType },
+      );
+    }
     const text =
       mediaType === 'text/csv'
         ? comparisonCsv(comparison)

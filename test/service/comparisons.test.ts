@@ -3,6 +3,7 @@ import type { ComparisonAnswer } from '../../service/schemas/comparisons.ts';
 import type { Json } from '../support/invented.ts';
 import { pointersOf } from '../support/problem-of.ts';
 import { testApp } from '../support/test-app.ts';
+import { xmlTree } from '../support/xml-tree.ts';
 
 const app = testApp();
 const side = (over: Json = {}, scenario: Json = {}): Json => ({
@@ -77,6 +78,15 @@ describe('POST /v1/comparisons', () => {
     expect(await markdown.text()).toContain('**worse**');
     const csv = await (await app.post('/v1/comparisons', body, { accept: 'text/csv' })).text();
     expect(csv.trimEnd().split(/\r?\n/)).toHaveLength(6);
+  });
+
+  it('a figure of both curves by Accept', async () => {
+    const body = { baseline: side(), candidate: side({ exposure: '500 g yr' }) };
+    const response = await app.post('/v1/comparisons', body, { accept: 'image/svg+xml' });
+    expect(response.headers.get('content-type')).toBe('image/svg+xml');
+    const text = await response.text();
+    expect(xmlTree(text).name).toBe('svg');
+    for (const name of ['baseline', 'candidate', 'planning estimate']) expect(text).toContain(name);
   });
 
   it('every fault at once, on both sides', async () => {
