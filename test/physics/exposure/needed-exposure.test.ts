@@ -58,7 +58,7 @@ describe('neededExposure', () => {
     expect(likelihood.binding).toBe('minimum-events');
   });
 
-  // physics.md, Statistics: 1.645 (median CLs), 1.755 (mean CLs), 1.734 (mean unified). Corrections are a few/√b with √b = 1.7e5.
+  // The project's physics notes, Statistics: 1.645 (median CLs), 1.755 (mean CLs), 1.734 (mean unified). Corrections are a few/√b with √b = 1.7e5.
   it.each([
     { method: 'likelihood', slope: 1.645 },
     { method: 'counting', slope: 1.755 },

@@ -88,7 +88,7 @@ describe('reachPoints', () => {
     },
   );
 
-  // Cowan et al. (2011): s = 10, b = 9 gives Z = 2.8973 and s = 5, b = 1 gives 3.3913 (physics.md: rounded to 5 digits, so 3e-5 in s).
+  // Cowan et al. (2011): s = 10, b = 9 gives Z = 2.8973 and s = 5, b = 1 gives 3.3913 (the project's physics notes: rounded to 5 digits, so 3e-5 in s).
   it.each([
     { significance: 2.8973, background: 9, signal: 10 },
     { significance: 3.3913, background: 1, signal: 5 },
@@ -101,7 +101,7 @@ describe('reachPoints', () => {
     },
   );
 
-  // physics.md, Statistics: 1.645 (median CLs), 1.755 (mean CLs), 1.734 (mean unified). Corrections are a few/√b with √b = 1e5.
+  // The project's physics notes, Statistics: 1.645 (median CLs), 1.755 (mean CLs), 1.734 (mean unified). Corrections are a few/√b with √b = 1e5.
   it.each([
     { method: 'likelihood', slope: 1.645 },
     { method: 'counting', slope: 1.755 },
