@@ -9,7 +9,7 @@ import { ionizationModelOf } from './detector-view.ts';
 import { speedBoundKmPerS } from './drawn-scenario.ts';
 import type { RatesJob } from './rates-answer.ts';
 import type { ResolvedScenario } from './resolved-scenario.ts';
-import { requireBelowLight, responseScenarioOf } from './response-scenario.ts';
+import { requireBelowLight, responseOf, responseScenarioOf } from './response-scenario.ts';
 import { distributionOf, shapeOf } from './velocity-distributions.ts';
 
 /** Width of the ladder's steps, eV, or what fits into as many as there may be. */
@@ -34,15 +34,14 @@ export function drawnRates(
     speedBoundKmPerS(scenario.halo),
   );
   requireBelowLight(largest * ABOVE_ROUNDING, '');
-  const base = responseScenarioOf(job, lastElectron);
   const ladder = names.some((name) => IONIZATION_PARAMETERS.has(name))
     ? ladderFor(job, drawn, lastElectron)
     : undefined;
-  const kernel = response(
-    ladder ? ladderScenario(base, ladder) : base,
-    largest * ABOVE_ROUNDING,
-    shapeOf(scenario.halo),
-  );
+  const fastest = largest * ABOVE_ROUNDING;
+  const shape = shapeOf(scenario.halo);
+  const kernel = ladder
+    ? response(ladderScenario(responseScenarioOf(job, lastElectron), ladder), fastest, shape)
+    : responseOf(job, lastElectron, fastest, shape);
   const rates = ratesByHalo(kernel, isHaloDrawn ? undefined : scenario);
   const binning = ladder && ladderBinning(ladder);
   return drawn.map((one) => {

@@ -6,6 +6,7 @@
 import type { CrystalTable } from '../../physics/crystal/crystal-table.ts';
 import { screenedTwin } from '../../physics/crystal/dielectric.ts';
 import { type GivenTable, lossTable } from '../crystals/given-table.ts';
+import { kept } from './kept.ts';
 import type { ResolvedCrystal } from './resolved-scenario.ts';
 
 const MOST_TABLES = 16;
@@ -20,12 +21,4 @@ export function keptTable({ id, screened, twin, electronsPerCell }: ResolvedCrys
   if (realDielectric && screened) return kept(twins, MOST_TWINS, id, () => lossTable(table, realDielectric));
   const given = kept(tables, MOST_TABLES, id, () => table);
   return twin === 'used' ? kept(twins, MOST_TWINS, id, () => screenedTwin(given, electronsPerCell)) : given;
-}
-
-function kept(from: Map<string, CrystalTable>, most: number, id: string, make: () => CrystalTable): CrystalTable {
-  const table = from.get(id) ?? make();
-  from.delete(id);
-  from.set(id, table);
-  if (from.size > most) from.delete(from.keys().next().value!);
-  return table;
 }

@@ -3,7 +3,7 @@ import { DomainError } from '../../physics/errors.ts';
 import { laboratoryVelocity, laboratorySpeedKmPerS as sunSpeedKmPerS } from '../../physics/halo/earth-velocity.ts';
 import { annualAmplitude, modulation, modulationExposureKgYr } from '../../physics/modulation/modulation.ts';
 import type { CrystalRate } from '../../physics/rate/crystal-rate.ts';
-import { response, responseRates } from '../../physics/rate/response.ts';
+import { responseRates } from '../../physics/rate/response.ts';
 import { Problem, pointerOf } from '../problem.ts';
 import { DEFAULT_LABORATORY_SPEED_KM_PER_S, isMoving, type MovingHaloIn } from '../schemas/halo.ts';
 import type { ModulationAnswer } from '../schemas/modulation.ts';
@@ -11,7 +11,7 @@ import { ionizationModelOf, measuredBackgrounds, readoutOf } from './detector-vi
 import { windowOf } from './exposure-answer.ts';
 import { type NoticeOut, rateNotices } from './notices.ts';
 import { type RatesJob, rateOf } from './rates-answer.ts';
-import { requireBelowLight, responseScenarioOf } from './response-scenario.ts';
+import { requireBelowLight, responseOf } from './response-scenario.ts';
 import { unrepresentable } from './unrepresentable.ts';
 import { atVelocity, distributionOf, largestSpeedKmPerS, shapeOf } from './velocity-distributions.ts';
 
@@ -36,7 +36,7 @@ export function modulationAnswer(job: ModulationJob): Omit<ModulationAnswer, 'pr
   const fastest = dated.reduce((a, b) => (b.laboratorySpeedKmPerS > a.laboratorySpeedKmPerS ? b : a));
   const largest = Math.max(...dated.map(largestSpeedKmPerS));
   requireBelowLight(largest, job.at);
-  const kernel = response(responseScenarioOf(job, lastElectron), largest, shapeOf(halo));
+  const kernel = responseOf(job, lastElectron, largest, shapeOf(halo));
   const rates = dated.map((onDate) => responseRates(kernel, distributionOf(onDate)));
   if (!rates.every((row) => row.every((rate) => rate >= 0 && rate < Infinity))) throw unrepresentable();
 

@@ -6,6 +6,7 @@ import type { GoalIn } from '../schemas/goal.ts';
 import { ionizationModelOf, measuredBackgrounds, measuredSignal, readoutOf } from './detector-view.ts';
 import { windowOf, windowRates } from './exposure-answer.ts';
 
+import { kept } from './kept.ts';
 import { type NoticeOut, rateNotices } from './notices.ts';
 import { rateOf } from './rates-answer.ts';
 import type { ResolvedScenario } from './resolved-scenario.ts';
@@ -54,11 +55,7 @@ const searches = new Map<string, Search>(); // least recently used first
 function searchOf({ scenario, goal, exposureKgYr }: ReachPointJob): Search {
   const { ionization, readout, backgrounds } = scenario;
   const key = JSON.stringify([ionization, readout, backgrounds, goal, exposureKgYr]);
-  const known = searches.get(key) ?? newSearch(scenario, goal, exposureKgYr);
-  searches.delete(key);
-  searches.set(key, known);
-  if (searches.size > MOST_SEARCHES) searches.delete(searches.keys().next().value!);
-  return known;
+  return kept(searches, MOST_SEARCHES, key, () => newSearch(scenario, goal, exposureKgYr));
 }
 
 function newSearch(scenario: ResolvedScenario, goal: GoalIn, exposureKgYr: number): Search {

@@ -1,8 +1,8 @@
 /** The halo-independent response of a scenario, as it goes out. */
-import { response, responseKernel } from '../../physics/rate/response.ts';
+import { responseKernel } from '../../physics/rate/response.ts';
 import type { RatesAnswer } from '../schemas/rates.ts';
 import type { RatesJob } from './rates-answer.ts';
-import { requireBelowLight, responseScenarioOf } from './response-scenario.ts';
+import { requireBelowLight, responseOf } from './response-scenario.ts';
 import { unrepresentable } from './unrepresentable.ts';
 import { largestSpeedKmPerS, shapeOf } from './velocity-distributions.ts';
 
@@ -13,7 +13,7 @@ export function responseOut(job: RatesJob): NonNullable<RatesAnswer['response']>
   const { halo, ionization } = job.scenario;
   const largest = Math.max(FASTEST_KM_PER_S, largestSpeedKmPerS(halo));
   requireBelowLight(largest, '');
-  const kernel = responseKernel(response(responseScenarioOf(job, ionization.maxElectrons), largest, shapeOf(halo)));
+  const kernel = responseKernel(responseOf(job, ionization.maxElectrons, largest, shapeOf(halo)));
   const finite = kernel.kernels.every((values) => values.every((value) => value >= 0 && value < Infinity));
   if (!finite) throw unrepresentable();
   return {

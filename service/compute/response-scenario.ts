@@ -1,8 +1,9 @@
 /** A scenario without its halo, as the calculation takes it. */
 import { SPEED_OF_LIGHT_KM_PER_S } from '../../physics/constants.ts';
-import type { ResponseScenario } from '../../physics/rate/response.ts';
+import { type Response, type ResponseScenario, response } from '../../physics/rate/response.ts';
 import { Problem } from '../problem.ts';
 import { ionizationModelOf } from './detector-view.ts';
+import { kept } from './kept.ts';
 import { keptTable } from './kept-tables.ts';
 import type { RatesJob } from './rates-answer.ts';
 
@@ -19,6 +20,24 @@ export function responseScenarioOf({ scenario, table }: RatesJob, lastElectron: 
     energyPerPairEv: ionization.energyPerPairEv,
     maxElectrons: lastElectron,
   };
+}
+
+/** A megabyte each, at most. */
+const MOST_RESPONSES = 16;
+const responses = new Map<string, Response>();
+
+/** The response of a job's scenario to any halo up to a largest speed, km/s; every halo of every later job reuses it. */
+export function responseOf(
+  job: RatesJob,
+  lastElectron: number,
+  largestSpeedKmPerS: number,
+  shape: Parameters<typeof response>[2],
+): Response {
+  const { darkMatter, halo, crystal, ionization } = job.scenario;
+  const density = halo.localDensityGevPerCm3;
+  const key = JSON.stringify([darkMatter, density, crystal, ionization, lastElectron, largestSpeedKmPerS, shape]);
+  const make = (): Response => response(responseScenarioOf(job, lastElectron), largestSpeedKmPerS, shape);
+  return kept(responses, MOST_RESPONSES, key, make);
 }
 
 /** A response needs a largest speed below that of light; `at` is where in the body the scenario stands. */
