@@ -3,6 +3,7 @@ import { createPatch } from 'rfc6902';
 import { compareReach, type OneSidedPoint, type RatioAt, type ReachComparison } from '../physics/reach/comparison.ts';
 import type { CurvePoint } from '../physics/reach/mass-grid.ts';
 import type { FigureCurve } from './figure/figure-input.ts';
+import { PLANNING_NOTICE } from './planning-estimate.ts';
 import { provenanceOf } from './provenance.ts';
 import { reachCurve } from './reach.ts';
 import type { Dependencies } from './route.ts';
@@ -56,10 +57,7 @@ export async function compareCurves(
       onlyCandidate: comparison.onlyCandidate.map(oneSidedOut),
       differences,
       notices: [
-        {
-          code: 'planning-estimate',
-          detail: 'A planning estimate. The collaboration’s own analysis of its detector takes precedence.',
-        },
+        PLANNING_NOTICE,
         ...(comparison.interpolatedPoints > 0
           ? [
               {

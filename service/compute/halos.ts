@@ -1,18 +1,14 @@
 /** Halos by their parameters, so that jobs which share one share its tabulated tail. */
 import type { VelocityDistribution } from '../../physics/halo/velocity-distribution.ts';
 import type { HaloIn } from '../schemas/halo.ts';
+import { kept } from './kept.ts';
 import { distributionOf } from './velocity-distributions.ts';
 
 const MOST_HALOS = 32;
 const halos = new Map<string, VelocityDistribution>(); // least recently used first
 
 export function haloOf(parameters: HaloIn): VelocityDistribution {
-  const key = keyOf(parameters);
-  const halo = halos.get(key) ?? distributionOf(parameters);
-  halos.delete(key);
-  halos.set(key, halo);
-  if (halos.size > MOST_HALOS) halos.delete(halos.keys().next().value!);
-  return halo;
+  return kept(halos, MOST_HALOS, keyOf(parameters), () => distributionOf(parameters));
 }
 
 /** All that the distribution depends on. */

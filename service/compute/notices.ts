@@ -1,5 +1,6 @@
 /** What a reader of the numbers should know, one sentence or two for each. */
 import type { CrystalRate, RangeCut } from '../../physics/rate/crystal-rate.ts';
+import { PLANNING_NOTICE } from '../planning-estimate.ts';
 import type { ResolvedScenario } from './resolved-scenario.ts';
 import { screeningNotices } from './screening-notices.ts';
 
@@ -10,13 +11,8 @@ export interface NoticeOut {
 
 const significant = (value: number, digits = 4): string => String(Number(value.toPrecision(digits)));
 
-export const PLANNING_ESTIMATE: NoticeOut = {
-  code: 'planning-estimate',
-  detail: 'A planning estimate. The collaboration’s own analysis of its detector takes precedence.',
-};
-
 export function rateNotices(scenario: ResolvedScenario, rate: CrystalRate): NoticeOut[] {
-  const notices: NoticeOut[] = [PLANNING_ESTIMATE];
+  const notices: NoticeOut[] = [PLANNING_NOTICE];
   notices.push(...screeningNotices(scenario.crystal));
   const { massMev, massSplittingEv } = scenario.darkMatter;
   const beyond = firstUnreachable(scenario, rate);

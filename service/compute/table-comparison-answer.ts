@@ -1,11 +1,12 @@
 /** The answer of POST /v1/crystals/{id}/comparisons but for its provenance: runs in a worker thread. */
 import type { CrystalTable } from '../../physics/crystal/crystal-table.ts';
 import { type Block, compareTables, type TableComparison } from '../../physics/crystal/table-comparison.ts';
+import { PLANNING_NOTICE } from '../planning-estimate.ts';
 import type { CrystalComparisonAnswer } from '../schemas/crystal-comparisons.ts';
 import { rateOut, sumOf } from './estimates.ts';
 import { haloOf } from './halos.ts';
 import { keptTable } from './kept-tables.ts';
-import { type NoticeOut, PLANNING_ESTIMATE } from './notices.ts';
+import type { NoticeOut } from './notices.ts';
 import type { ResolvedCrystal, ResolvedScenario } from './resolved-scenario.ts';
 import { responseScenarioOf } from './response-scenario.ts';
 import { screeningNotices } from './screening-notices.ts';
@@ -89,7 +90,7 @@ function refuseUnrepresentable({ bins, baseline, candidate, blocks }: TableCompa
 function noticesOf({ scenario, otherCrystal, otherBandGapEv }: TableComparisonJob): NoticeOut[] {
   const { crystal, ionization } = scenario;
   const notices = [
-    PLANNING_ESTIMATE,
+    PLANNING_NOTICE,
     ...screeningNotices(crystal, 'The table of the URL'),
     ...screeningNotices(otherCrystal, 'The other table'),
   ];

@@ -6,6 +6,7 @@
  */
 import { scaleLog } from 'd3-scale';
 import { DomainError } from '../../physics/errors.ts';
+import { PLANNING_ESTIMATE } from '../planning-estimate.ts';
 import { axesOf, hairlines } from './axes.ts';
 import { bandOf, curvePath, curveStroke, edgeMark, markersOf, referenceStroke } from './curves.ts';
 import { checkFigure, type ReachFigure } from './figure-input.ts';
@@ -30,9 +31,6 @@ import { wrapped } from './text-width.ts';
 import { element, lines, type Markup, textAt } from './xml.ts';
 
 export type { FigureCurve, ReachFigure } from './figure-input.ts';
-
-export const PLANNING_ESTIMATE =
-  'A planning estimate. The collaboration’s own analysis of its detector takes precedence.';
 
 /** Generic, so that the figure depends on no font. */
 const FONT = 'sans-serif';

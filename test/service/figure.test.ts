@@ -3,9 +3,10 @@ import { DomainError } from '../../physics/errors.ts';
 import type { CurvePoint } from '../../physics/reach/mass-grid.ts';
 import { CURVE_STYLES, REFERENCE_DASHES } from '../../service/figure/line-style.ts';
 import { logTicks, type Tick } from '../../service/figure/log-axis.ts';
-import { PLANNING_ESTIMATE, type ReachFigure, reachFigure } from '../../service/figure/reach-figure.ts';
+import { type ReachFigure, reachFigure } from '../../service/figure/reach-figure.ts';
 import { shortened, textWidth, wrapped } from '../../service/figure/text-width.ts';
 import { escapeXml } from '../../service/figure/xml.ts';
+import { PLANNING_ESTIMATE } from '../../service/planning-estimate.ts';
 import { everyElement, textOf, type XmlElement, xmlTree } from '../support/xml-tree.ts';
 
 function points(...pairs: [number, number | null][]): CurvePoint[] {

@@ -6,6 +6,7 @@ import { fileURLToPath } from 'node:url';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import { changedAt, inventedTable, type Json } from '../support/invented.ts';
 import { type Exit, type RunningService, startRunningService, temporaryFolder } from '../support/running-service.ts';
+import { smallDisk } from '../support/small-disk.ts';
 import { xmlTree } from '../support/xml-tree.ts';
 
 const NIGHTLY = fileURLToPath(new URL('../../dist/service/nightly.js', import.meta.url));
@@ -83,16 +84,7 @@ function requireWhole(dataDir: string): number {
 }
 
 /** A disk of 256 KiB, where there is the right to mount one. */
-const mounted = ((): string | undefined => {
-  const target = newFolder();
-  try {
-    execFileSync('mount', ['-t', 'tmpfs', '-o', 'size=256k', 'tmpfs', target], { stdio: 'ignore' });
-    return target;
-  } catch {
-    return undefined;
-  }
-})();
-if (!mounted) console.log('skipped: the full disk needs the right to mount a tmpfs (root, CAP_SYS_ADMIN)');
+const mounted = smallDisk(newFolder(), '256k');
 
 let service: RunningService;
 beforeAll(async () => {

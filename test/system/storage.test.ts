@@ -7,6 +7,7 @@ import { afterAll, describe, expect, test } from 'vitest';
 import { inventedScenario, inventedTable, largeTable } from '../support/invented.ts';
 import { problemOf } from '../support/problem-of.ts';
 import { type RunningService, startRunningService, temporaryFolder } from '../support/running-service.ts';
+import { smallDisk } from '../support/small-disk.ts';
 
 const folders: string[] = [];
 const folder = (): string => {
@@ -153,16 +154,7 @@ describe('a disk that refuses', () => {
     await refusesUploads(await start({ DATA_DIR: path.join(file, 'below') }), inventedTable());
   });
 
-  const mounted = ((): string | undefined => {
-    const target = folder();
-    try {
-      execFileSync('mount', ['-t', 'tmpfs', '-o', 'size=256k', 'tmpfs', target], { stdio: 'ignore' });
-      return target;
-    } catch {
-      return undefined;
-    }
-  })();
-  if (!mounted) console.log('skipped: the full disk needs the right to mount a tmpfs (root, CAP_SYS_ADMIN)');
+  const mounted = smallDisk(folder(), '256k');
   afterAll(() => {
     if (mounted) execFileSync('umount', ['-l', mounted]);
   });

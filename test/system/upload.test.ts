@@ -8,6 +8,7 @@ import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import { inventedTable } from '../support/invented.ts';
 import { problemOf } from '../support/problem-of.ts';
 import { type RunningService, startRunningService, temporaryFolder } from '../support/running-service.ts';
+import { smallDisk } from '../support/small-disk.ts';
 import { FORM_TYPE, hdf5Of, npyHeader, npyOf, tableForm, withoutValues } from '../support/upload-form.ts';
 
 const MIB = 2 ** 20;
@@ -203,16 +204,7 @@ describe('uploads that do not come to an end', () => {
     await eventually(() => uploadsOf(next).length === 0);
   });
 
-  const mounted = ((): string | undefined => {
-    const target = folder();
-    try {
-      execFileSync('mount', ['-t', 'tmpfs', '-o', 'size=2m', 'tmpfs', target], { stdio: 'ignore' });
-      return target;
-    } catch {
-      return undefined;
-    }
-  })();
-  if (!mounted) console.log('skipped: the full disk needs the right to mount a tmpfs (root, CAP_SYS_ADMIN)');
+  const mounted = smallDisk(folder(), '2m');
   afterAll(() => {
     if (mounted) execFileSync('umount', ['-l', mounted]);
   });
